@@ -1,0 +1,1 @@
+//! [`Extraction`](crate::extract::Extraction) to text: summary, JSON, CSV, SPICE.

@@ -1,0 +1,1 @@
+//! Text with a unit, such as "35 um", to SI and back: the only place that knows prefixes.

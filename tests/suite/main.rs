@@ -1,0 +1,1 @@
+//! The suite: one binary, one module per kind of check.
