@@ -36,14 +36,15 @@ impl PanelShape {
             let part = 0.5 * normal.dot(&a.cross(&b));
             area += part;
             first += part * (a + b) / 3.0;
-            second +=
-                part / 12.0 * (2.0 * a * a.transpose() + 2.0 * b * b.transpose() + a * b.transpose() + b * a.transpose());
+            second += part / 12.0
+                * (2.0 * a * a.transpose() + 2.0 * b * b.transpose() + a * b.transpose() + b * a.transpose());
         }
         if !(area.is_finite() && area > 0.0) {
             return None;
         }
         let offset = first / area;
-        let diameter = corners.iter().flat_map(|p| corners.iter().map(move |q| (p - q).norm())).fold(0.0, f64::max);
+        let diameter =
+            corners.iter().flat_map(|p| corners.iter().map(move |q| (p - q).norm())).fold(0.0, f64::max);
         Some(PanelShape {
             corners: four,
             n_corners,
@@ -122,7 +123,8 @@ mod tests {
         // Derived: a rectangle a x b has ∫ x² = a³ b / 12 about its centre.
         let (a, b) = (3.0, 2.0);
         let z = Vec3::new(0.0, 0.0, 1.0);
-        let at = [(1.0, 1.0), (1.0 + a, 1.0), (1.0 + a, 1.0 + b), (1.0, 1.0 + b)].map(|(x, y)| Vec3::new(x, y, 5.0));
+        let at = [(1.0, 1.0), (1.0 + a, 1.0), (1.0 + a, 1.0 + b), (1.0, 1.0 + b)]
+            .map(|(x, y)| Vec3::new(x, y, 5.0));
         let shape = PanelShape::new(&at, z).unwrap();
         assert!((shape.area() - a * b).abs() < 1e-14);
         assert!((shape.centroid() - Vec3::new(2.5, 2.0, 5.0)).norm() < 1e-14);

@@ -5,7 +5,7 @@
 //! the orientation (outer rings counter-clockwise, holes clockwise) and what a result may contain.
 
 use i_overlay::core::fill_rule::FillRule;
-use i_overlay::core::overlay::{IntOverlayOptions, Overlay};
+use i_overlay::core::overlay::{Overlay, ShapeType};
 use i_overlay::core::overlay_rule::OverlayRule;
 use i_overlay::i_float::int::point::IntPoint;
 
@@ -90,13 +90,19 @@ impl Bounds {
     /// Whether the two share a point.
     #[must_use]
     pub fn meets(&self, other: &Bounds) -> bool {
-        self.lo.x <= other.hi.x && other.lo.x <= self.hi.x && self.lo.y <= other.hi.y && other.lo.y <= self.hi.y
+        self.lo.x <= other.hi.x
+            && other.lo.x <= self.hi.x
+            && self.lo.y <= other.hi.y
+            && other.lo.y <= self.hi.y
     }
 
     /// The bounds moved out by `by` steps on all sides.
     #[must_use]
     pub fn grown(&self, by: i64) -> Bounds {
-        Bounds { lo: Point::new(self.lo.x - by, self.lo.y - by), hi: Point::new(self.hi.x + by, self.hi.y + by) }
+        Bounds {
+            lo: Point::new(self.lo.x - by, self.lo.y - by),
+            hi: Point::new(self.hi.x + by, self.hi.y + by),
+        }
     }
 
     /// The rectangle as a region.
@@ -133,12 +139,8 @@ impl Region {
             Fill::NonZero => FillRule::NonZero,
             Fill::EvenOdd => FillRule::EvenOdd,
         };
-        let mut overlay = Overlay::new_custom(
-            contours.iter().map(Vec::len).sum(),
-            IntOverlayOptions::default(),
-            i_overlay::core::solver::Solver::default(),
-        );
-        overlay.add_contours(contours, i_overlay::core::overlay::ShapeType::Subject);
+        let mut overlay = Overlay::new(contours.iter().map(Vec::len).sum());
+        overlay.add_source(contours, ShapeType::Subject);
         Region { shapes: overlay.overlay(OverlayRule::Subject, rule) }
     }
 
@@ -169,7 +171,7 @@ impl Region {
     }
 
     fn combine(&self, other: &Region, rule: OverlayRule) -> Region {
-        let mut overlay = Overlay::with_shapes(&self.shapes, &other.shapes);
+        let mut overlay = Overlay::from_subj_and_clip(&self.shapes, &other.shapes);
         Region { shapes: overlay.overlay(rule, FillRule::NonZero) }
     }
 
@@ -255,7 +257,8 @@ fn crossings(ring: &[Point], at: Point) -> usize {
             continue;
         }
         // Exact sign of the cross product (q - p) x (at - p).
-        let cross = i128::from(q.x - p.x) * i128::from(at.y - p.y) - i128::from(q.y - p.y) * i128::from(at.x - p.x);
+        let cross =
+            i128::from(q.x - p.x) * i128::from(at.y - p.y) - i128::from(q.y - p.y) * i128::from(at.x - p.x);
         if (cross > 0) == (q.y > p.y) {
             count += 1;
         }

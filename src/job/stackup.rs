@@ -28,7 +28,11 @@ impl Stackup {
     /// The layer called `name`.
     #[must_use]
     pub fn find(&self, name: &str) -> Option<LayerId> {
-        self.layers.iter().position(|layer| layer.name == name).and_then(|k| u32::try_from(k).ok()).map(LayerId)
+        self.layers
+            .iter()
+            .position(|layer| layer.name == name)
+            .and_then(|k| u32::try_from(k).ok())
+            .map(LayerId)
     }
 
     /// The layer `id`.
@@ -43,7 +47,10 @@ impl Stackup {
 
     /// Every layer with its id, from top to bottom.
     pub fn iter(&self) -> impl DoubleEndedIterator<Item = (LayerId, &Layer)> {
-        self.layers.iter().enumerate().map(|(k, layer)| (LayerId(u32::try_from(k).unwrap_or(u32::MAX)), layer))
+        self.layers
+            .iter()
+            .enumerate()
+            .map(|(k, layer)| (LayerId(u32::try_from(k).unwrap_or(u32::MAX)), layer))
     }
 
     /// The conductor layers, from top to bottom.
