@@ -5,7 +5,7 @@ pub mod stackup;
 use crate::diag::Origin;
 use std::collections::BTreeMap;
 
-pub use stackup::{Layer, LayerId, LayerKind, Material, Stackup, WideFace};
+pub use stackup::{Layer, LayerId, LayerKind, LayerQuantity, Material, Spread, Stackup, Tolerance, WideFace};
 
 /// A name as the user wrote it, and where.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -230,8 +230,16 @@ pub struct MaterialPatch {
     pub er: Option<f64>,
     /// Loss tangent.
     pub loss_tangent: Option<f64>,
+    /// Where `er` comes from, when it is given: "job", or "job, table at 1 GHz".
+    pub er_source: String,
     /// Dielectric strength, V/m.
     pub strength: Option<f64>,
+    /// Thickness of a layer that has none of its own, m.
+    pub thickness: Option<f64>,
+    /// Depth of a coating on the copper's top, m; its `thickness` is the depth on the laminate.
+    pub depth_on_copper: Option<f64>,
+    /// Whether the dielectric flows between the copper of the adjoining inner layer.
+    pub prepreg: Option<bool>,
     /// Where it stands.
     pub origin: Origin,
 }

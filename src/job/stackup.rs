@@ -22,6 +22,8 @@ pub struct Stackup {
     /// From top to bottom. An open half-space that the file left out is added as vacuum, so the first and the last
     /// layer are always open.
     pub layers: Vec<Layer>,
+    /// Keys that are accepted but have no effect yet.
+    pub unused: Vec<Named>,
 }
 
 impl Stackup {
@@ -66,8 +68,66 @@ pub struct Layer {
     pub name: String,
     /// What it is.
     pub kind: LayerKind,
+    /// How far its quantities may be off; empty when the file does not say.
+    pub tolerance: Vec<Tolerance>,
     /// Where it stands.
     pub origin: Origin,
+}
+
+impl Layer {
+    /// A layer without tolerances that was made by a default.
+    #[must_use]
+    pub fn new(name: impl Into<String>, kind: LayerKind) -> Self {
+        Layer { name: name.into(), kind, tolerance: Vec::new(), origin: Origin::default() }
+    }
+
+    /// What it is made of; `None` for a conductor.
+    #[must_use]
+    pub fn material(&self) -> Option<&Material> {
+        match &self.kind {
+            LayerKind::Open { material }
+            | LayerKind::Coating { material, .. }
+            | LayerKind::Dielectric { material, .. } => Some(material),
+            LayerKind::Conductor { .. } => None,
+        }
+    }
+}
+
+/// How far one quantity of a layer may be off its nominal value, to either side.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Tolerance {
+    /// Which quantity.
+    pub quantity: LayerQuantity,
+    /// By how much.
+    pub spread: Spread,
+}
+
+/// A quantity of a layer that can carry a tolerance.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum LayerQuantity {
+    /// Relative permittivity.
+    Er,
+    /// Thickness of a conductor or a dielectric.
+    Thickness,
+    /// Depth of a coating where there is no copper.
+    DepthOnLaminate,
+    /// Depth of a coating on the copper's top.
+    DepthOnCopper,
+    /// Depth of a coating beside the copper's walls.
+    DepthBesideCopper,
+    /// Angle of the side walls.
+    SideSlope,
+    /// Shift of the edges.
+    EtchBias,
+}
+
+/// Half-width of a tolerance.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub enum Spread {
+    /// As a fraction of the nominal value.
+    Relative(f64),
+    /// In the unit of the quantity: m, rad or 1.
+    Absolute(f64),
 }
 
 /// What a layer is. Lengths in m.
@@ -144,4 +204,19 @@ pub struct Material {
     pub conductivity: Option<f64>,
     /// Dielectric strength, V/m.
     pub strength: Option<f64>,
+}
+
+impl Material {
+    /// A lossless material of relative permittivity `er` that `er_source` vouches for.
+    #[must_use]
+    pub fn new(name: impl Into<String>, er: f64, er_source: impl Into<String>) -> Self {
+        Material {
+            name: name.into(),
+            er,
+            er_source: er_source.into(),
+            loss_tangent: None,
+            conductivity: None,
+            strength: None,
+        }
+    }
 }
