@@ -123,6 +123,14 @@ pub fn brief(value: f64, unit: Unit) -> String {
     }
 }
 
+/// The unit that suits a table whose largest entry is `largest`: its size in the SI unit of `unit`, and its symbol.
+#[must_use]
+pub fn scale(largest: f64, unit: Unit) -> (f64, &'static str) {
+    let (_, symbol) = number_and_symbol(largest, unit, 6);
+    let power = unit.spec().shown.iter().find(|(_, shown)| *shown == symbol).map_or(0, |(power, _)| *power);
+    (10f64.powi(power), symbol)
+}
+
 /// What a symbol multiplies by.
 #[derive(Debug, Clone, Copy, PartialEq)]
 enum Scale {
@@ -400,6 +408,8 @@ mod tests {
         assert_eq!(brief(200e-6, Unit::Length), "200 um");
         assert_eq!(brief(1e6, Unit::Frequency), "1 MHz");
         assert_eq!(brief(0.01, Unit::Ratio), "1 %");
+        assert_eq!(scale(-12.34e-12, Unit::Capacitance), (1e-12, "pF"));
+        assert_eq!(scale(0.0, Unit::Charge), (1.0, "C"));
     }
 
     /// What: what `show` prints with 17 digits reads back as the same double. Identity: parse after print.

@@ -1,4 +1,4 @@
-//! Numbers for people and for files: how many digits, which prefix.
+//! Numbers for people and for files: how many digits, and which of them can be believed.
 //!
 //! Text shows digits down to the bar, as 12.34(5): the figure in brackets is the half-width of the bar in units of the
 //! last digit, rounded up. Files keep three digits more than the bar has, so that nothing is lost by reading them; both
@@ -79,58 +79,11 @@ fn unsigned_zero(text: String) -> String {
     if is_zero { text.trim_start_matches('-').to_owned() } else { text }
 }
 
-/// A decimal prefix for a whole table.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub(crate) struct Prefix {
-    /// What one prefixed unit is in SI.
-    pub(crate) size: f64,
-    /// Its symbol.
-    pub(crate) symbol: &'static str,
-}
-
-/// The prefix under which `largest` lies between 1 and 1000.
-pub(crate) fn prefix_for(largest: f64) -> Prefix {
-    const PREFIXES: [(i32, &str); 11] = [
-        (-21, "z"),
-        (-18, "a"),
-        (-15, "f"),
-        (-12, "p"),
-        (-9, "n"),
-        (-6, "u"),
-        (-3, "m"),
-        (0, ""),
-        (3, "k"),
-        (6, "M"),
-        (9, "G"),
-    ];
-    let wanted = place(largest).unwrap_or(0).div_euclid(3) * 3;
-    let (exponent, symbol) =
-        PREFIXES.iter().copied().find(|(exponent, _)| wanted <= *exponent).unwrap_or((9, "G"));
-    Prefix { size: 10f64.powi(exponent), symbol }
-}
-
-/// One number with a prefix and four digits: "1.234 GHz".
-pub(crate) fn engineering(value: f64, unit: &str) -> String {
-    let prefix = prefix_for(value);
-    format!("{} {}{unit}", significant(value / prefix.size, 4), prefix.symbol)
-}
-
-/// An area in mm², or um² for small things.
-pub(crate) fn area(square_metres: f64) -> String {
-    if square_metres.abs() < 1e-8 {
-        format!("{} um2", significant(square_metres * 1e12, 4))
-    } else {
-        format!("{} mm2", significant(square_metres * 1e6, 4))
-    }
-}
-
-/// A length with four digits.
-pub(crate) fn length(metres: f64) -> String {
-    if metres.abs() < 1e-4 {
-        format!("{} um", significant(metres * 1e6, 4))
-    } else {
-        format!("{} mm", significant(metres * 1e3, 4))
-    }
+/// An amount of memory: "123 MB", "1.2 GB".
+pub(crate) fn memory(bytes: u64) -> String {
+    #[expect(clippy::cast_precision_loss, reason = "two or three digits are printed")]
+    let bytes = bytes as f64;
+    if bytes < 1e9 { format!("{:.0} MB", (bytes / 1e6).ceil()) } else { format!("{:.1} GB", bytes / 1e9) }
 }
 
 /// A share as per cent, two digits.
@@ -171,13 +124,5 @@ mod tests {
         close(stable_bar(2e-15), 2e-15);
         close(decade_above(3.2e-15), 1e-12);
         close(decade_above(3.2e-5), 1e-4);
-    }
-
-    #[test]
-    fn prefixes_keep_numbers_short() {
-        assert_eq!(engineering(3.456_78e-12, "F"), "3.457 pF");
-        assert_eq!(engineering(1e9, "Hz"), "1 GHz");
-        assert_eq!(engineering(0.5, "F"), "500 mF");
-        assert_eq!(prefix_for(0.0).symbol, "");
     }
 }

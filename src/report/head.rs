@@ -1,18 +1,20 @@
 //! The head of every report: what the numbers stand on, and what they leave out.
 
 use crate::extract::Extraction;
-use crate::report::figures::{engineering, percent, significant};
+use crate::report::figures::{percent, significant};
 use crate::report::values;
 use crate::report::{Notes, StackupTolerance};
+use crate::units::{self, Unit};
 
 /// What no number includes, in the words of every head.
 pub(crate) const NOT_MODELLED: &str = "roughness, weave and anisotropy not modelled";
 
 /// Label and text of each line.
 pub(crate) fn lines(extraction: &Extraction, notes: Notes) -> Vec<(&'static str, String)> {
-    let frequency = extraction
-        .frequency
-        .map_or_else(|| "not given; permittivities as they stand".to_owned(), |f| engineering(f, "Hz"));
+    let frequency = extraction.frequency.map_or_else(
+        || "not given; permittivities as they stand".to_owned(),
+        |f| units::brief(f, Unit::Frequency),
+    );
     let dielectrics: Vec<String> = extraction
         .dielectrics
         .iter()
@@ -28,7 +30,7 @@ pub(crate) fn lines(extraction: &Extraction, notes: Notes) -> Vec<(&'static str,
             "valid to",
             format!(
                 "{}, up to which the region is electrically small",
-                engineering(extraction.quasi_static_limit, "Hz")
+                units::show(extraction.quasi_static_limit, Unit::Frequency, 3)
             ),
         ),
         ("by default", defaulted(extraction)),

@@ -4,7 +4,8 @@ use serde::Serialize;
 use std::fmt::Write as _;
 
 use crate::report::ReportError;
-use crate::report::figures::{area, engineering, length, significant};
+use crate::report::figures::{memory, significant};
+use crate::units::{self, Unit};
 
 /// What the region holds. Plain data: `cli` fills it from the stages, this room prints it. SI.
 #[derive(Debug, Clone, PartialEq)]
@@ -134,14 +135,18 @@ pub fn text(inspection: &Inspection) -> String {
     let name_width = inspection.layers.iter().map(|layer| layer.name.chars().count()).max().unwrap_or(0);
     for layer in &inspection.layers {
         let mut line = format!("  {:<name_width$}  {:<10}", layer.name, layer.kind);
-        let thickness = layer.thickness_m.map_or_else(String::new, length);
+        let thickness = layer.thickness_m.map_or_else(String::new, |t| units::brief(t, Unit::Length));
         let _ = write!(line, "  {thickness:>9}");
         if let (Some(er), Some(source)) = (layer.er, &layer.er_source) {
             let _ = write!(line, "  er {} ({source})", significant(er, 6));
         }
         if layer.kind == "conductor" {
             let (nets, pieces) = (layer.nets, layer.pieces);
-            let _ = write!(line, "  {} of copper, {nets} nets, {pieces} pieces", area(layer.area_m2));
+            let _ = write!(
+                line,
+                "  {} of copper, {nets} nets, {pieces} pieces",
+                units::show(layer.area_m2, Unit::Area, 5)
+            );
         }
         let _ = writeln!(text, "{}", line.trim_end());
     }
@@ -149,7 +154,13 @@ pub fn text(inspection: &Inspection) -> String {
     let name_width = inspection.nets.iter().map(|net| net.name.chars().count()).max().unwrap_or(0);
     for net in &inspection.nets {
         let cut = if net.cut { "  cut by the border of the region" } else { "" };
-        let _ = writeln!(text, "  {:<name_width$}  {:<9}  {}{cut}", net.name, net.role, area(net.area_m2));
+        let _ = writeln!(
+            text,
+            "  {:<name_width$}  {:<9}  {}{cut}",
+            net.name,
+            net.role,
+            units::show(net.area_m2, Unit::Area, 4)
+        );
     }
     if inspection.drills.is_empty() {
         text.push_str("\nDrills: none\n");
@@ -159,7 +170,11 @@ pub fn text(inspection: &Inspection) -> String {
     for drill in &inspection.drills {
         let lining = if drill.plated { "plated" } else { "bare" };
         let (n, from, to) = (drill.holes, &drill.from, &drill.to);
-        let _ = writeln!(text, "  {n} x {} {lining}, {from} to {to}", length(drill.diameter_m));
+        let _ = writeln!(
+            text,
+            "  {n} x {} {lining}, {from} to {to}",
+            units::brief(drill.diameter_m, Unit::Length)
+        );
     }
     let shorts = if inspection.shorts.is_empty() { "none".to_owned() } else { inspection.shorts.join("; ") };
     let _ = writeln!(text, "\nShorts: {shorts}");
@@ -181,8 +196,6 @@ impl Cost {
     /// "1234 panels, 56 MB, about 3 s".
     #[must_use]
     pub fn line(&self) -> String {
-        #[expect(clippy::cast_precision_loss, reason = "three digits are printed")]
-        let memory = engineering(self.memory as f64, "B");
-        format!("{} panels, {memory}, about {} s", self.panels, significant(self.seconds, 2))
+        format!("{} panels, {}, about {} s", self.panels, memory(self.memory), significant(self.seconds, 2))
     }
 }

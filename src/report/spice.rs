@@ -7,9 +7,10 @@
 use std::fmt::Write as _;
 
 use crate::extract::Extraction;
-use crate::report::figures::{engineering, percent, stable, with_bar};
+use crate::report::figures::{percent, stable, with_bar};
 use crate::report::values::{self, Barred};
 use crate::report::{Notes, head};
+use crate::units::{self, Unit};
 
 /// Longest line, in characters: some readers cut at 80.
 const LINE_LIMIT: usize = 78;
@@ -97,7 +98,7 @@ impl Network {
             "{} couplings under {} of sqrt(cii cjj) lumped to the reference, {} in all",
             self.n_lumped,
             percent(x.accuracy.floor),
-            engineering(self.lumped, "F")
+            units::show(self.lumped, Unit::Capacitance, 2)
         );
         comment(text, &line);
         if 0 < self.n_negative {

@@ -4,10 +4,11 @@ use std::fmt::Write as _;
 
 use crate::extract::Extraction;
 use crate::faces::GroupKind;
-use crate::report::figures::{area, percent, prefix_for, significant, with_bar};
+use crate::report::figures::{memory, percent, significant, with_bar};
 use crate::report::values::{self, Barred, Neighbour};
 use crate::report::{Notes, head};
 use crate::results::CheckOutcome;
+use crate::units::{self, Unit};
 
 /// Widest table that is printed, in columns; the files hold the rest.
 const MAX_COLUMNS: usize = 8;
@@ -48,14 +49,14 @@ fn matrix(text: &mut String, x: &Extraction, title: &str, entry: fn(&Extraction,
     let largest = (0..names.len())
         .flat_map(|i| (0..names.len()).map(move |j| (i, j)))
         .map(|(i, j)| entry(x, i, j).value.abs());
-    let prefix = prefix_for(largest.fold(0.0, f64::max));
-    push(text, &format!("\n{title}, {}F", prefix.symbol));
+    let (unit, symbol) = units::scale(largest.fold(0.0, f64::max), Unit::Capacitance);
+    push(text, &format!("\n{title}, {symbol}"));
     let mut table =
         vec![std::iter::once("").chain(names.iter().copied()).map(str::to_owned).take(n_shown + 1).collect()];
     for (i, name) in names.iter().enumerate().take(n_shown) {
         let cells = (0..n_shown).map(|j| {
             let Barred { value, bar } = entry(x, i, j);
-            with_bar(value / prefix.size, bar / prefix.size)
+            with_bar(value / unit, bar / unit)
         });
         table.push(std::iter::once((*name).to_owned()).chain(cells).collect());
     }
@@ -83,11 +84,10 @@ fn aligned(text: &mut String, table: &[Vec<String>]) {
 
 fn neighbours(text: &mut String, x: &Extraction, row: usize) {
     let Barred { value: own, bar } = values::maxwell(x, row, row);
-    let prefix = prefix_for(own);
-    let unit = format!("{}F", prefix.symbol);
-    let shown = |b: &Barred| with_bar(b.value / prefix.size, b.bar / prefix.size);
+    let (unit, symbol) = units::scale(own, Unit::Capacitance);
+    let shown = |b: &Barred| with_bar(b.value / unit, b.bar / unit);
     let title = format!(
-        "\nNeighbours of {}, {unit} (self {})",
+        "\nNeighbours of {}, {symbol} (self {})",
         values::row_names(x)[row],
         shown(&Barred { value: own, bar })
     );
@@ -131,12 +131,9 @@ fn interfaces(text: &mut String, x: &Extraction) {
     }
     let largest =
         found.iter().flat_map(|(k, _)| &x.results.groups[*k].bound).map(|q| q.abs()).fold(0.0, f64::max);
-    let prefix = prefix_for(largest);
-    let title = format!(
-        "\nBound charge on interfaces, {}C at 1 V on each row net (from|to along the normal)",
-        prefix.symbol
-    );
-    push(text, &title);
+    let (unit, symbol) = units::scale(largest, Unit::Charge);
+    let title = "Bound charge on interfaces (from|to along the normal)";
+    push(text, &format!("\n{title}, {symbol} at 1 V on each row net"));
     let names = values::row_names(x);
     let mut table: Vec<Vec<String>> =
         vec![["", "area"].into_iter().chain(names).take(n_shown + 2).map(str::to_owned).collect()];
@@ -144,10 +141,10 @@ fn interfaces(text: &mut String, x: &Extraction) {
         let group = &x.results.groups[k];
         let bars = &x.bars.group_bound[k];
         let cells = group.bound.iter().zip(bars).take(n_shown);
-        let cells = cells.map(|(q, bar)| with_bar(q / prefix.size, bar / prefix.size));
-        table.push([name, area(group.area)].into_iter().chain(cells).collect());
+        let cells = cells.map(|(q, bar)| with_bar(q / unit, bar / unit));
+        table.push([name, units::show(group.area, Unit::Area, 4)].into_iter().chain(cells).collect());
         if let Some(tail) = &group.tail {
-            let cells = tail.iter().take(n_shown).map(|q| significant(q / prefix.size, 2));
+            let cells = tail.iter().take(n_shown).map(|q| significant(q / unit, 2));
             table
                 .push(["  beyond, to infinity".to_owned(), String::new()].into_iter().chain(cells).collect());
         }
@@ -158,12 +155,8 @@ fn interfaces(text: &mut String, x: &Extraction) {
 /// Charge that is there with every row at 0 V, beside nets of given charge.
 fn idle(text: &mut String, x: &Extraction) {
     let charged = x.nets.iter().zip(&x.results.idle_charge).filter(|(_, q)| 0.0 < q.abs());
-    let table: Vec<Vec<String>> = charged
-        .map(|(net, q)| {
-            let prefix = prefix_for(*q);
-            vec![net.name.clone(), format!("{} {}C", significant(q / prefix.size, 4), prefix.symbol)]
-        })
-        .collect();
+    let table: Vec<Vec<String>> =
+        charged.map(|(net, q)| vec![net.name.clone(), units::show(*q, Unit::Charge, 4)]).collect();
     if !table.is_empty() {
         push(text, "\nFree charge with every row net at 0 V, from nets of given charge");
         aligned(text, &table);
@@ -206,9 +199,7 @@ fn mesh(text: &mut String, x: &Extraction) {
     );
     push(text, &line);
     let total: f64 = x.solver.seconds.iter().map(|(_, s)| s).sum();
-    let memory = x
-        .solver
-        .peak_memory
-        .map_or_else(String::new, |bytes| format!("; peak memory {} MB", bytes / 1_000_000));
+    let memory =
+        x.solver.peak_memory.map_or_else(String::new, |bytes| format!("; peak memory {}", memory(bytes)));
     push(text, &format!("Time: {total:.1} s{memory}"));
 }

@@ -39,12 +39,12 @@ pub(crate) fn mutual(extraction: &Extraction, i: usize, j: usize) -> Barred {
     Barred { value: -0.5 * (a.value + b.value), bar: a.bar.max(b.bar) }
 }
 
-/// What entry (`i`, `j`) is measured against: sqrt(C_ii C_jj), F.
+/// What entry (`i`, `j`) is measured against: `sqrt(C_ii C_jj)`, F.
 pub(crate) fn scale(extraction: &Extraction, i: usize, j: usize) -> f64 {
     (extraction.results.maxwell[(i, i)] * extraction.results.maxwell[(j, j)]).abs().sqrt()
 }
 
-/// The largest relative bar under the rule of the accuracy target: bar / max(|C_ij|, floor * sqrt(C_ii C_jj)).
+/// The largest relative bar under the rule of the accuracy target: `bar / max(|C_ij|, floor * sqrt(C_ii C_jj))`.
 pub(crate) fn worst_relative_bar(extraction: &Extraction) -> f64 {
     let n_rows = extraction.results.rows.len();
     let floor = extraction.accuracy.floor;
