@@ -1,1 +1,2 @@
 //! The suite: one binary, one module per kind of check.
+mod mesh;
