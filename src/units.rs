@@ -157,6 +157,18 @@ struct Spec {
 }
 
 impl Unit {
+    /// The quantity with its article, for messages: "a length".
+    #[must_use]
+    pub fn what(self) -> &'static str {
+        self.spec().what
+    }
+
+    /// A correct text: "0.2 mm".
+    #[must_use]
+    pub fn example(self) -> &'static str {
+        self.spec().example
+    }
+
     /// For messages: what is wanted, an example, and the symbols.
     fn expected(self) -> String {
         let spec = self.spec();

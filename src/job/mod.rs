@@ -1,10 +1,31 @@
 //! Job and stackup text to [`Job`] and [`Stackup`]: SI units, defaults filled in, every problem reported at once.
 
+mod check;
+mod error;
+mod gbrjob;
+mod keys;
+mod patch;
+mod permittivity;
+mod read;
+mod read_artwork;
+
+mod read_layer;
+mod read_nets;
+mod read_shape;
+mod read_stackup;
+mod section;
 pub mod stackup;
+mod structure;
+mod tolerance;
 
 use crate::diag::Origin;
 use std::collections::BTreeMap;
 
+pub use check::check_names;
+pub use error::{JobErrors, JobProblem};
+pub use gbrjob::read_gbrjob_stackup;
+pub use read::read_job;
+pub use read_stackup::read_stackup;
 pub use stackup::{Layer, LayerId, LayerKind, LayerQuantity, Material, Spread, Stackup, Tolerance, WideFace};
 
 /// A name as the user wrote it, and where.
