@@ -1,0 +1,161 @@
+//! Mean over one panel of a function that another panel makes: graded product Gauss rules.
+//!
+//! The potential and the solid angle of a flat panel are analytic away from its edges, so a Gauss rule with n points
+//! on a piece of half-length a errs by about ρ^(-2n), with ρ = (1 + sqrt(1 + q^2)) / q and q = a / (distance of the
+//! nearest singularity in the complex plane of that direction): `Trefethen2013`, theorem 19.3. Along a line parallel to an
+//! edge the edge is no singularity, only its ends are; at an angle, the distance grows by 1 / sin. Pieces with q too
+//! large are halved in that direction alone, so that long thin panels need few pieces.
+
+use crate::kernel::flat::{Flat, bilinear};
+use crate::kernel::quadrature::gauss;
+
+/// How accurate a mean has to be: largest q for one to six points.
+#[derive(Debug, Clone, Copy)]
+pub struct Effort {
+    /// Entry n - 1: largest q that n points may meet.
+    largest_q: [f64; 6],
+    /// Halvings of a length that touches a singularity.
+    halvings: i32,
+}
+
+impl Effort {
+    /// ρ^(-2n) = 2e-6; for the potential, whose singularities at edges are weak (d ln d).
+    pub const POTENTIAL: Effort = Effort { largest_q: [0.0028, 0.0753, 0.2276, 0.4034, 0.5799, 0.75], halvings: 7 };
+    /// ρ^(-2n) = 1e-7; for the solid angle, whose errors the row of a dense dielectric magnifies.
+    pub const FLUX: Effort = Effort { largest_q: [0.0006, 0.0356, 0.137, 0.271, 0.415, 0.56], halvings: 9 };
+}
+
+/// Mean over `outer` of `f`, a function of a point in the frame of `inner` (m) that is analytic but at its edges.
+pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) -> f64) -> f64 {
+    let mut corners = [[0.0; 3]; 4];
+    let n = inner.n_corners;
+    for (k, c) in corners.iter_mut().enumerate().take(n) {
+        *c = outer.local(inner.global(inner.corners[k][0], inner.corners[k][1]));
+    }
+    let along = |t: [f64; 2]| {
+        let d = inner.u * t[0] + inner.v * t[1];
+        [d.dot(&outer.u), d.dot(&outer.v), d.dot(&outer.normal)]
+    };
+    let task = Task {
+        corners,
+        tangents: inner.tangents.map(along),
+        n,
+        effort,
+        shortest: [0.5f64.powi(effort.halvings) * inner.radius.min(outer.radius); 2],
+        origin: inner.local(outer.centroid),
+        columns: [inner.local(inner.centroid + outer.u), inner.local(inner.centroid + outer.v)],
+        f,
+    };
+    let mut patch = outer.corners;
+    if outer.n_corners == 3 {
+        patch[3] = patch[2];
+    }
+    let sides = extents(&patch);
+    let shortest = std::array::from_fn(|k| task.shortest[k].min(sides[k].0 * 0.5f64.powi(effort.halvings)));
+    Task { shortest, ..task }.integral(&patch) / outer.area
+}
+
+struct Task<'a, F> {
+    /// Corners of the inner panel in the frame of the outer one.
+    corners: [[f64; 3]; 4],
+    /// Its edges' directions there.
+    tangents: [[f64; 3]; 4],
+    n: usize,
+    effort: &'a Effort,
+    /// Half-lengths that are halved no more.
+    shortest: [f64; 2],
+    /// Maps the outer frame to the inner one.
+    origin: [f64; 3],
+    columns: [[f64; 3]; 2],
+    f: F,
+}
+
+/// Half-length and unit direction along s and t of a patch.
+fn extents(p: &[[f64; 2]; 4]) -> [(f64, [f64; 2]); 2] {
+    let side = |a: [f64; 2], b: [f64; 2]| [b[0] - a[0], b[1] - a[1]];
+    let pair = |e: [f64; 2], g: [f64; 2]| {
+        let (x, y) = (e[0] + g[0], e[1] + g[1]);
+        let norm = x.hypot(y).max(f64::MIN_POSITIVE);
+        (0.5 * e[0].hypot(e[1]).max(g[0].hypot(g[1])), [x / norm, y / norm])
+    };
+    [pair(side(p[0], p[1]), side(p[3], p[2])), pair(side(p[0], p[3]), side(p[1], p[2]))]
+}
+
+impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
+    fn integral(&self, patch: &[[f64; 2]; 4]) -> f64 {
+        let sides = extents(patch);
+        let q = self.sharpness(patch, &sides);
+        let may = [sides[0].0 > self.shortest[0], sides[1].0 > self.shortest[1]];
+        let most = self.effort.largest_q[5];
+        let worst = usize::from(q[1] * f64::from(u8::from(may[1])) > q[0] * f64::from(u8::from(may[0])));
+        if q[worst] > most && may[worst] {
+            let (one, two) = halves(patch, worst);
+            return self.integral(&one) + self.integral(&two);
+        }
+        let count = |q: f64| 1 + self.effort.largest_q[..5].iter().take_while(|most| **most < q).count();
+        self.product(patch, count(q[0]), count(q[1]))
+    }
+
+    /// q along s and along t.
+    fn sharpness(&self, patch: &[[f64; 2]; 4], sides: &[(f64, [f64; 2]); 2]) -> [f64; 2] {
+        let axis = sides[0].1;
+        let turn = |x: f64, y: f64| [x * axis[0] + y * axis[1], y * axis[0] - x * axis[1]];
+        let first = turn(patch[0][0], patch[0][1]);
+        let (mut lo, mut hi) = (first, first);
+        for c in &patch[1..] {
+            let c = turn(c[0], c[1]);
+            for k in 0..2 {
+                lo[k] = lo[k].min(c[k]);
+                hi[k] = hi[k].max(c[k]);
+            }
+        }
+        let seen: [[f64; 3]; 4] = std::array::from_fn(|k| {
+            let [x, y] = turn(self.corners[k][0], self.corners[k][1]);
+            [x, y, self.corners[k][2]]
+        });
+        // Distance from the patch to the box around two points.
+        let distance = |a: [f64; 3], b: [f64; 3]| {
+            let gap = |k: usize| (lo[k] - a[k].max(b[k])).max(a[k].min(b[k]) - hi[k]).max(0.0);
+            let z = if a[2] * b[2] <= 0.0 { 0.0 } else { a[2].abs().min(b[2].abs()) };
+            (gap(0) * gap(0) + gap(1) * gap(1) + z * z).sqrt().max(f64::MIN_POSITIVE)
+        };
+        let mut q: [f64; 2] = [0.0; 2];
+        for k in 0..self.n {
+            let next = (k + 1) % self.n;
+            let (at_corner, at_edge) = (distance(seen[k], seen[k]), distance(seen[k], seen[next]));
+            let e = self.tangents[k];
+            for d in 0..2 {
+                let (a, t) = sides[d];
+                let across = t[0] * e[1] - t[1] * e[0];
+                let sine = (across * across + e[2] * e[2]).sqrt();
+                q[d] = q[d].max(a / at_corner).max(a * sine / at_edge);
+            }
+        }
+        q
+    }
+
+    fn product(&self, patch: &[[f64; 2]; 4], n_s: usize, n_t: usize) -> f64 {
+        let ((s, ws), (t, wt)) = (gauss(n_s), gauss(n_t));
+        let mut sum = 0.0;
+        for i in 0..n_s {
+            for j in 0..n_t {
+                let ([x, y], jacobian) = bilinear(patch, s[i], t[j]);
+                let at = std::array::from_fn(|k| self.origin[k] + self.columns[0][k] * x + self.columns[1][k] * y);
+                sum += ws[i] * wt[j] * jacobian * (self.f)(at);
+            }
+        }
+        sum
+    }
+}
+
+/// The patch halved across direction `side`: 0 for s, 1 for t.
+fn halves(p: &[[f64; 2]; 4], side: usize) -> ([[f64; 2]; 4], [[f64; 2]; 4]) {
+    let mid = |a: [f64; 2], b: [f64; 2]| [0.5 * (a[0] + b[0]), 0.5 * (a[1] + b[1])];
+    if side == 0 {
+        let (low, high) = (mid(p[0], p[1]), mid(p[3], p[2]));
+        ([p[0], low, high, p[3]], [low, p[1], p[2], high])
+    } else {
+        let (left, right) = (mid(p[0], p[3]), mid(p[1], p[2]));
+        ([p[0], p[1], right, left], [left, right, p[2], p[3]])
+    }
+}

@@ -1,0 +1,114 @@
+//! The two entries of a pair of panels: the only place where rules are chosen and put to use.
+
+use crate::geom::Vec3;
+use crate::kernel::flat::{Flat, Points};
+use crate::kernel::outer::{self, Effort};
+use crate::kernel::regime::{self, Regime, regime};
+use crate::kernel::{COULOMB, EPS0, flux, galerkin, moment, potential};
+
+/// Two panels lie in one plane when no corner of the source is farther from the test panel's plane than this, as a
+/// fraction of the sum of the radii. Rounding of coordinates stays below it, any gap that is meant stays above.
+const COPLANAR: f64 = 1e-9;
+
+/// Mean potential over `test` due to unit total charge density on `source`.
+///
+/// ```text
+/// P = 1/A_test ∫_test ∫_source 1/(4π ε₀ r) dS dS'
+/// ```
+/// - `shift`: the source is displaced by this, m; zero but for images.
+///
+/// Returns V per C/m². `A_test P(test, source)` over the area of the source is symmetric to the accuracy of the rules.
+///
+/// # Accuracy
+/// Relative error at most 1e-6, 1e-8 for panels in one plane; see [`regime`](mod@crate::kernel::regime).
+#[must_use]
+#[inline]
+pub fn potential(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
+    let r = test.centroid - source.centroid - shift;
+    let mean = match regime(test, source, r, &regime::POTENTIAL) {
+        Regime::Far => moment::inverse_distance(test, source, r),
+        Regime::Coarse => product_inverse(&test.coarse, &source.coarse, r),
+        Regime::Fine => product_inverse(&test.fine, &source.fine, r),
+        Regime::Near => near_inverse(test, &source.displaced(shift)),
+    };
+    COULOMB * source.area * mean
+}
+
+/// Mean of 1/r over both panels when they are near each other.
+fn near_inverse(test: &Flat, source: &Flat) -> f64 {
+    galerkin::inverse_distance(test, source).unwrap_or_else(|| {
+        // The smaller panel is the outer one, whatever its part, so that the entry is symmetric.
+        let (outer, inner) = if test.radius <= source.radius { (test, source) } else { (source, test) };
+        outer::mean(outer, inner, &Effort::POTENTIAL, |at| potential::inverse_distance(inner, at)) / inner.area
+    })
+}
+
+/// Mean over `test` of the normal field, along the normal of `test`, due to unit total charge density on `source`; the
+/// principal value where the source lies in the plane of the test panel, which is 0.
+///
+/// ```text
+/// F = 1/A_test ∫_test E . n dS = -1/(4π ε₀ A_test) ∫_source Ω_test(y) dS(y)
+/// ```
+/// Ω > 0 on the side that the normal points to: charge behind the panel gives a positive flux.
+///
+/// - `shift`: the source is displaced by this, m; zero but for images.
+///
+/// Returns V/m per C/m².
+///
+/// # Accuracy
+/// Error at most 1e-6 of the largest entry at that distance; see [`regime`](mod@crate::kernel::regime).
+#[must_use]
+#[inline]
+pub fn flux(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
+    let r = test.centroid - source.centroid - shift;
+    let mean = match regime(test, source, r, &regime::FLUX) {
+        Regime::Far => moment::flux(test, source, r),
+        Regime::Coarse => product_flux(&test.coarse, &source.coarse, r, test.normal),
+        Regime::Fine => product_flux(&test.fine, &source.fine, r, test.normal),
+        Regime::Near => near_flux(test, &source.displaced(shift)),
+    };
+    COULOMB * source.area * mean
+}
+
+/// Mean of n.r/r³ over both panels when they are near each other.
+fn near_flux(test: &Flat, source: &Flat) -> f64 {
+    let plane = |k: usize| test.local(source.global(source.corners[k][0], source.corners[k][1]))[2].abs();
+    if (0..source.n_corners).all(|k| plane(k) <= COPLANAR * (test.radius + source.radius)) {
+        return 0.0;
+    }
+    -outer::mean(source, test, &Effort::FLUX, |at| flux::solid_angle(test, at)) / test.area
+}
+
+/// Mean of 1/r over the points of both panels, whose centroids differ by `r`.
+#[inline]
+fn product_inverse<const N: usize>(test: &Points<N>, source: &Points<N>, r: Vec3) -> f64 {
+    let mut lanes = [0.0; N];
+    for i in 0..N {
+        let (x, y, z) = (r.x + test.x[i], r.y + test.y[i], r.z + test.z[i]);
+        for j in 0..N {
+            let (dx, dy, dz) = (x - source.x[j], y - source.y[j], z - source.z[j]);
+            lanes[j] += test.weight[i] * source.weight[j] / (dx * dx + dy * dy + dz * dz).sqrt();
+        }
+    }
+    lanes.iter().sum()
+}
+
+/// Mean of n.r/r³ over the points of both panels, whose centroids differ by `r`.
+#[inline]
+fn product_flux<const N: usize>(test: &Points<N>, source: &Points<N>, r: Vec3, n: Vec3) -> f64 {
+    let mut lanes = [0.0; N];
+    for i in 0..N {
+        let (x, y, z) = (r.x + test.x[i], r.y + test.y[i], r.z + test.z[i]);
+        for j in 0..N {
+            let (dx, dy, dz) = (x - source.x[j], y - source.y[j], z - source.z[j]);
+            let d2 = dx * dx + dy * dy + dz * dz;
+            let along = dx * n.x + dy * n.y + dz * n.z;
+            lanes[j] += test.weight[i] * source.weight[j] * along / (d2 * d2.sqrt());
+        }
+    }
+    lanes.iter().sum()
+}
+
+/// Field of the surface's own charge on either side, per unit density: 1 / (2 ε₀), V/m per C/m². Not part of
+/// [`flux`], which is the principal value.
+pub const OWN_SIDE: f64 = 0.5 / EPS0;
