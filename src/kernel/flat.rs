@@ -56,7 +56,8 @@ impl Flat {
         let at = shape.corners();
         let n_corners = at.len();
         let edge = |k: usize| at[(k + 1) % n_corners] - at[k];
-        let longest = (0..n_corners).map(edge).fold(Vec3::zeros(), |a, b| if b.norm() > a.norm() { b } else { a });
+        let longest =
+            (0..n_corners).map(edge).fold(Vec3::zeros(), |a, b| if b.norm() > a.norm() { b } else { a });
         let normal = shape.normal();
         let u = (longest - normal * normal.dot(&longest)).normalize();
         let v = normal.cross(&u);
@@ -143,9 +144,8 @@ fn points<const M: usize, const N: usize>(
 #[must_use]
 pub fn bilinear(corners: &[[f64; 2]; 4], s: f64, t: f64) -> ([f64; 2], f64) {
     let [a, b, c, d] = *corners;
-    let mix = |k: usize| {
-        (1.0 - s) * (1.0 - t) * a[k] + s * (1.0 - t) * b[k] + s * t * c[k] + (1.0 - s) * t * d[k]
-    };
+    let mix =
+        |k: usize| (1.0 - s) * (1.0 - t) * a[k] + s * (1.0 - t) * b[k] + s * t * c[k] + (1.0 - s) * t * d[k];
     let along_s = |k: usize| (1.0 - t) * (b[k] - a[k]) + t * (c[k] - d[k]);
     let along_t = |k: usize| (1.0 - s) * (d[k] - a[k]) + s * (c[k] - b[k]);
     ([mix(0), mix(1)], along_s(0) * along_t(1) - along_s(1) * along_t(0))

@@ -108,7 +108,7 @@ pub(crate) fn angle_of_view(flat: &Flat, view: &View) -> f64 {
 }
 
 /// Real and imaginary part of a number whose argument is the edge's share:
-/// atan(p hi / (line2 + h r_hi)) - atan(p lo / (line2 + h r_lo)).
+/// `atan(p hi / (line2 + h r_hi)) - atan(p lo / (line2 + h r_lo))`.
 #[inline]
 fn share(e: &EdgeView, h: f64) -> (f64, f64) {
     let (a_lo, a_hi) = (e.line2 + h * e.r_lo, e.line2 + h * e.r_hi);

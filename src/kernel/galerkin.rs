@@ -99,7 +99,10 @@ impl Segment {
             let (foot, gap) = (place * cosine, place * sine);
             once_r(to - foot, gap) - once_r(from - foot, gap)
         };
-        Some((s1 * line(s1, t0, t1) - s0 * line(s0, t0, t1) + t1 * line(t1, s0, s1) - t0 * line(t0, s0, s1)) / 3.0)
+        Some(
+            (s1 * line(s1, t0, t1) - s0 * line(s0, t0, t1) + t1 * line(t1, s0, s1) - t0 * line(t0, s0, s1))
+                / 3.0,
+        )
     }
 }
 

@@ -32,7 +32,8 @@ pub fn flux(test: &Flat, source: &Flat, r: Vec3) -> f64 {
     let inv3 = inv2 * inv2.sqrt();
     let (m_r, quadratic, trace) = contract(test, source, r);
     let along = test.normal.dot(&r);
-    inv3 * (along * (1.0 + inv2 * (7.5 * quadratic * inv2 - 1.5 * trace)) - 3.0 * inv2 * test.normal.dot(&m_r))
+    inv3 * (along * (1.0 + inv2 * (7.5 * quadratic * inv2 - 1.5 * trace))
+        - 3.0 * inv2 * test.normal.dot(&m_r))
 }
 
 /// M R, R.M.R and tr M.

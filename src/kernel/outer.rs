@@ -20,9 +20,10 @@ pub struct Effort {
 
 impl Effort {
     /// ρ^(-2n) = 2e-6; for the potential, whose singularities at edges are weak (d ln d).
-    pub const POTENTIAL: Effort = Effort { largest_q: [0.0028, 0.0753, 0.2276, 0.4034, 0.5799, 0.75], halvings: 7 };
+    pub const POTENTIAL: Effort =
+        Effort { largest_q: [0.0028, 0.0753, 0.2276, 0.4034, 0.5799, 0.75], halvings: 6 };
     /// ρ^(-2n) = 1e-7; for the solid angle, whose errors the row of a dense dielectric magnifies.
-    pub const FLUX: Effort = Effort { largest_q: [0.0006, 0.0356, 0.137, 0.271, 0.415, 0.56], halvings: 9 };
+    pub const FLUX: Effort = Effort { largest_q: [0.0006, 0.0356, 0.137, 0.271, 0.415, 0.56], halvings: 8 };
 }
 
 /// Mean over `outer` of `f`, a function of a point in the frame of `inner` (m) that is analytic but at its edges.
@@ -46,10 +47,7 @@ pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) ->
         columns: [inner.local(inner.centroid + outer.u), inner.local(inner.centroid + outer.v)],
         f,
     };
-    let mut patch = outer.corners;
-    if outer.n_corners == 3 {
-        patch[3] = patch[2];
-    }
+    let patch = if outer.n_corners == 3 { task.turned_triangle(&outer.corners) } else { outer.corners };
     let sides = extents(&patch);
     let shortest = std::array::from_fn(|k| task.shortest[k].min(sides[k].0 * 0.5f64.powi(effort.halvings)));
     Task { shortest, ..task }.integral(&patch) / outer.area
@@ -82,6 +80,28 @@ fn extents(p: &[[f64; 2]; 4]) -> [(f64, [f64; 2]); 2] {
 }
 
 impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
+    /// A triangle as a quadrilateral with a repeated corner, so turned that lines of constant t run along the edge that
+    /// touches the inner panel, or shrink to the only corner that does.
+    fn turned_triangle(&self, corners: &[[f64; 2]; 4]) -> [[f64; 2]; 4] {
+        let nearest = |at: [f64; 2]| {
+            let edges = (0..self.n)
+                .map(|k| segment_distance(&self.corners[k], &self.corners[(k + 1) % self.n], at, at));
+            edges.fold(f64::INFINITY, f64::min)
+        };
+        let far = [0, 1, 2].map(|k| nearest(corners[k]));
+        let touching = 1e-6 * (far[0] + far[1] + far[2]);
+        let apex = match [0, 1, 2].map(|k| far[k] <= touching) {
+            [true, false, false] => 0,
+            [false, true, false] => 1,
+            [false, false, true] => 2,
+            _ if far[0] >= far[1] && far[0] >= far[2] => 0,
+            _ if far[1] >= far[2] => 1,
+            _ => 2,
+        };
+        let [a, b, c] = [1, 2, 0].map(|k| corners[(apex + k) % 3]);
+        [a, b, c, c]
+    }
+
     fn integral(&self, patch: &[[f64; 2]; 4]) -> f64 {
         let sides = extents(patch);
         let q = self.sharpness(patch, &sides);
@@ -113,16 +133,11 @@ impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
             let [x, y] = turn(self.corners[k][0], self.corners[k][1]);
             [x, y, self.corners[k][2]]
         });
-        // Distance from the patch to the box around two points.
-        let distance = |a: [f64; 3], b: [f64; 3]| {
-            let gap = |k: usize| (lo[k] - a[k].max(b[k])).max(a[k].min(b[k]) - hi[k]).max(0.0);
-            let z = if a[2] * b[2] <= 0.0 { 0.0 } else { a[2].abs().min(b[2].abs()) };
-            (gap(0) * gap(0) + gap(1) * gap(1) + z * z).sqrt().max(f64::MIN_POSITIVE)
-        };
         let mut q: [f64; 2] = [0.0; 2];
         for k in 0..self.n {
             let next = (k + 1) % self.n;
-            let (at_corner, at_edge) = (distance(seen[k], seen[k]), distance(seen[k], seen[next]));
+            let at_corner = norm(gap(&seen[k], lo, hi));
+            let at_edge = segment_distance(&seen[k], &seen[next], lo, hi);
             let e = self.tangents[k];
             for d in 0..2 {
                 let (a, t) = sides[d];
@@ -140,12 +155,55 @@ impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
         for i in 0..n_s {
             for j in 0..n_t {
                 let ([x, y], jacobian) = bilinear(patch, s[i], t[j]);
-                let at = std::array::from_fn(|k| self.origin[k] + self.columns[0][k] * x + self.columns[1][k] * y);
+                let at =
+                    std::array::from_fn(|k| self.origin[k] + self.columns[0][k] * x + self.columns[1][k] * y);
                 sum += ws[i] * wt[j] * jacobian * (self.f)(at);
             }
         }
         sum
     }
+}
+
+/// From the box `lo` to `hi` in the plane z = 0 to a point; zero inside.
+fn gap(at: &[f64; 3], lo: [f64; 2], hi: [f64; 2]) -> [f64; 3] {
+    [at[0] - at[0].clamp(lo[0], hi[0]), at[1] - at[1].clamp(lo[1], hi[1]), at[2]]
+}
+
+fn norm(g: [f64; 3]) -> f64 {
+    (g[0] * g[0] + g[1] * g[1] + g[2] * g[2]).sqrt().max(f64::MIN_POSITIVE)
+}
+
+/// Distance of the segment from `a` to `b` and the box. Its square is convex and piecewise quadratic along the segment,
+/// so Newton's method on the slope, kept in its bracket, ends after a step or two per piece.
+fn segment_distance(a: &[f64; 3], b: &[f64; 3], lo: [f64; 2], hi: [f64; 2]) -> f64 {
+    let d = [b[0] - a[0], b[1] - a[1], b[2] - a[2]];
+    let at = |s: f64| [a[0] + s * d[0], a[1] + s * d[1], a[2] + s * d[2]];
+    let slope = |s: f64| {
+        let g = gap(&at(s), lo, hi);
+        let curvature: f64 = (0..3).filter(|k| g[*k] != 0.0).map(|k| d[k] * d[k]).sum();
+        (g[0] * d[0] + g[1] * d[1] + g[2] * d[2], curvature)
+    };
+    if slope(0.0).0 >= 0.0 {
+        return norm(gap(a, lo, hi));
+    }
+    if slope(1.0).0 <= 0.0 {
+        return norm(gap(b, lo, hi));
+    }
+    let (mut from, mut to, mut s) = (0.0, 1.0, 0.5);
+    for _ in 0..6 {
+        let (rise, curvature) = slope(s);
+        if rise == 0.0 {
+            break;
+        }
+        if rise > 0.0 {
+            to = s
+        } else {
+            from = s
+        }
+        let newton = s - rise / curvature;
+        s = if newton > from && newton < to { newton } else { 0.5 * (from + to) };
+    }
+    norm(gap(&at(s), lo, hi))
 }
 
 /// The patch halved across direction `side`: 0 for s, 1 for t.

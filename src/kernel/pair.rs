@@ -39,7 +39,8 @@ fn near_inverse(test: &Flat, source: &Flat) -> f64 {
     galerkin::inverse_distance(test, source).unwrap_or_else(|| {
         // The smaller panel is the outer one, whatever its part, so that the entry is symmetric.
         let (outer, inner) = if test.radius <= source.radius { (test, source) } else { (source, test) };
-        outer::mean(outer, inner, &Effort::POTENTIAL, |at| potential::inverse_distance(inner, at)) / inner.area
+        outer::mean(outer, inner, &Effort::POTENTIAL, |at| potential::inverse_distance(inner, at))
+            / inner.area
     })
 }
 
@@ -85,9 +86,9 @@ fn product_inverse<const N: usize>(test: &Points<N>, source: &Points<N>, r: Vec3
     let mut lanes = [0.0; N];
     for i in 0..N {
         let (x, y, z) = (r.x + test.x[i], r.y + test.y[i], r.z + test.z[i]);
-        for j in 0..N {
+        for (j, lane) in lanes.iter_mut().enumerate() {
             let (dx, dy, dz) = (x - source.x[j], y - source.y[j], z - source.z[j]);
-            lanes[j] += test.weight[i] * source.weight[j] / (dx * dx + dy * dy + dz * dz).sqrt();
+            *lane += test.weight[i] * source.weight[j] / (dx * dx + dy * dy + dz * dz).sqrt();
         }
     }
     lanes.iter().sum()
@@ -99,11 +100,11 @@ fn product_flux<const N: usize>(test: &Points<N>, source: &Points<N>, r: Vec3, n
     let mut lanes = [0.0; N];
     for i in 0..N {
         let (x, y, z) = (r.x + test.x[i], r.y + test.y[i], r.z + test.z[i]);
-        for j in 0..N {
+        for (j, lane) in lanes.iter_mut().enumerate() {
             let (dx, dy, dz) = (x - source.x[j], y - source.y[j], z - source.z[j]);
             let d2 = dx * dx + dy * dy + dz * dz;
             let along = dx * n.x + dy * n.y + dz * n.z;
-            lanes[j] += test.weight[i] * source.weight[j] * along / (d2 * d2.sqrt());
+            *lane += test.weight[i] * source.weight[j] * along / (d2 * d2.sqrt());
         }
     }
     lanes.iter().sum()

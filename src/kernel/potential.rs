@@ -10,7 +10,7 @@ use crate::kernel::flux::{EdgeView, View, angle_of_view};
 /// I(x) = ∫ dS(y) / |x - y|  =  Σ_edges p ln((r_hi + hi) / (r_lo + lo))  -  h Ω(x)
 /// ```
 /// Closed form, one logarithm per edge: `Wilton1984`, eq. (5). The logarithm is taken of
-/// 1 + 2 L / ((r_lo + lo) + (r_hi - hi)), each bracket free of cancellation.
+/// `1 + 2 L / ((r_lo + lo) + (r_hi - hi))`, each bracket free of cancellation.
 ///
 /// - `at`: field point in the panel's frame ([`Flat::local`]), m; may lie on the panel, an edge or an edge's line.
 ///
@@ -30,7 +30,7 @@ pub fn inverse_distance(flat: &Flat, at: [f64; 3]) -> f64 {
     sum
 }
 
-/// ln((r_hi + hi) / (r_lo + lo)); 0 where it is infinite, since its factor p vanishes there.
+/// `ln((r_hi + hi) / (r_lo + lo))`; 0 where it is infinite, since its factor p vanishes there.
 #[inline]
 fn log_ratio(e: &EdgeView) -> f64 {
     let before = if e.lo >= 0.0 { e.r_lo + e.lo } else { e.line2 / (e.r_lo - e.lo) };

@@ -1,6 +1,6 @@
 //! The one criterion by which a pair of panels is integrated.
 //!
-//! All rules but the near one err by a power of x, with x² = (R_t² + R_s²) / d², R the radii of both panels (greatest
+//! All rules but the near one err by a power of x, with `x² = (R_t² + R_s²) / d²`, R the radii of both panels (greatest
 //! distance from the centroid) and d the distance of the centroids.
 
 use crate::geom::Vec3;

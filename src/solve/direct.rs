@@ -49,7 +49,11 @@ impl Factor {
         let stack = MemStack::new(&mut memory);
         factor::lu_in_place(lu.as_mut(), &mut perm, &mut perm_inv, par(), stack, Spec::default());
         let regular = (0..n).all(|k| lu[(k, k)] != 0.0 && lu[(k, k)].is_finite());
-        if regular { Ok(Factor { lu, perm, perm_inv, probes, probed }) } else { Err(SolveError::Singular { panels: n }) }
+        if regular {
+            Ok(Factor { lu, perm, perm_inv, probes, probed })
+        } else {
+            Err(SolveError::Singular { panels: n })
+        }
     }
 
     /// Solves A X = B.

@@ -43,7 +43,10 @@ pub enum SystemError {
     },
     /// The content: two image planes in the wrong order.
     #[error("the upper image plane, z = {above} m, is not above the lower one, z = {below} m")]
-    #[diagnostic(code(system::planes_out_of_order), help("order the layers of the stackup from top to bottom"))]
+    #[diagnostic(
+        code(system::planes_out_of_order),
+        help("order the layers of the stackup from top to bottom")
+    )]
     PlanesOutOfOrder {
         /// Lower plane, m.
         below: f64,

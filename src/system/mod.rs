@@ -70,8 +70,12 @@ pub fn assemble_within(mesh: &Mesh, limit: u64) -> Result<System, SystemError> {
             column[(i, 0)] = sources.entry(row, sources.flat(i), k) + if i == k { row.own } else { 0.0 };
         }
     });
-    let excited: Vec<NetId> =
-        (0u32..).map(NetId).zip(&mesh.nets).filter(|(_, net)| net.role != Role::Ground).map(|(id, _)| id).collect();
+    let excited: Vec<NetId> = (0u32..)
+        .map(NetId)
+        .zip(&mesh.nets)
+        .filter(|(_, net)| net.role != Role::Ground)
+        .map(|(id, _)| id)
+        .collect();
     let right_sides = Mat::from_fn(n, excited.len(), |i, c| {
         if mesh.panels[i].kind.net() == Some(excited[c]) { row_scales[i] } else { 0.0 }
     });
@@ -103,7 +107,9 @@ fn check_planes(mesh: &Mesh) -> Result<(), SystemError> {
     for (panel, p) in mesh.panels.iter().enumerate() {
         let slack = TOUCHING * p.shape.diameter();
         for corner in p.shape.corners() {
-            let beyond = below.filter(|plane| corner.z < plane - slack).or(above.filter(|plane| corner.z > plane + slack));
+            let beyond = below
+                .filter(|plane| corner.z < plane - slack)
+                .or(above.filter(|plane| corner.z > plane + slack));
             if let Some(plane) = beyond {
                 return Err(SystemError::BeyondPlane { panel, z: corner.z, plane });
             }

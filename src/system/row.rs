@@ -26,11 +26,13 @@ impl Row {
     /// The row of a panel of this kind.
     ///
     /// Normal n from medium 1 (`er_from`) into medium 2 (`er_to`):
-    /// (er1 + er2)/2 σ/ε₀ + (er2 - er1) E_n = 0; the trapped charge of a film would stand on the right.
+    /// `(er1 + er2)/2 σ/ε₀ + (er2 - er1) E_n = 0`; the trapped charge of a film would stand on the right.
     #[must_use]
     pub fn of(kind: &PanelKind) -> Self {
         match *kind {
-            PanelKind::Conductor { .. } | PanelKind::Sheet { .. } => Row { own: 0.0, potential: 1.0, flux: 0.0 },
+            PanelKind::Conductor { .. } | PanelKind::Sheet { .. } => {
+                Row { own: 0.0, potential: 1.0, flux: 0.0 }
+            }
             PanelKind::Interface { er_from, er_to, .. } => {
                 Row { own: 0.5 * (er_from + er_to) / EPS0, potential: 0.0, flux: er_to - er_from }
             }
@@ -91,7 +93,9 @@ impl Sources {
 
     fn act(&self, row: &Row, test: &Flat, density: MatRef<'_, f64>) -> Vec<f64> {
         let entries: Vec<f64> = (0..self.len()).into_par_iter().map(|k| self.entry(row, test, k)).collect();
-        (0..density.ncols()).map(|c| entries.iter().enumerate().map(|(k, e)| e * density[(k, c)]).sum()).collect()
+        (0..density.ncols())
+            .map(|c| entries.iter().enumerate().map(|(k, e)| e * density[(k, c)]).sum())
+            .collect()
     }
 }
 

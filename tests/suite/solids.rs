@@ -74,7 +74,7 @@ pub(crate) fn panel(mesh: &mut Mesh, corners: &[Vec3], normal: Vec3, kind: Panel
     if turn.dot(&normal) < 0.0 {
         corners.reverse();
     }
-    let shape = PanelShape::new(&corners, normal).expect("a panel with area");
+    let shape = PanelShape::new(&corners, normal).unwrap();
     let group = group(mesh, &kind, open);
     mesh.panels.push(Panel { shape, kind, group, face: 0 });
 }
@@ -129,7 +129,10 @@ pub(crate) fn icosphere(n: usize, radius: f64) -> Vec<[Vec3; 3]> {
     for i in 0..12 {
         for j in i + 1..12 {
             for k in j + 1..12 {
-                if near(corners[i], corners[j]) && near(corners[j], corners[k]) && near(corners[k], corners[i]) {
+                if near(corners[i], corners[j])
+                    && near(corners[j], corners[k])
+                    && near(corners[k], corners[i])
+                {
                     triangles.extend(subdivided([corners[i], corners[j], corners[k]], n));
                 }
             }
