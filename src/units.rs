@@ -116,8 +116,9 @@ pub fn show(value: f64, unit: Unit, digits: usize) -> String {
 #[must_use]
 pub fn brief(value: f64, unit: Unit) -> String {
     let (number, symbol) = number_and_symbol(value, unit, 6);
-    if number.contains('.') && !number.contains('e') {
-        format!("{} {symbol}", number.trim_end_matches('0').trim_end_matches('.'))
+    let (digits, power) = number.split_at(number.find('e').unwrap_or(number.len()));
+    if digits.contains('.') {
+        format!("{}{power} {symbol}", digits.trim_end_matches('0').trim_end_matches('.'))
     } else {
         format!("{number} {symbol}")
     }
@@ -419,6 +420,7 @@ mod tests {
         assert_eq!(brief(1.55e-3, Unit::Length), "1.55 mm");
         assert_eq!(brief(200e-6, Unit::Length), "200 um");
         assert_eq!(brief(1e6, Unit::Frequency), "1 MHz");
+        assert_eq!(brief(1.5e300, Unit::Length), "1.5e300 m");
         assert_eq!(brief(0.01, Unit::Ratio), "1 %");
         assert_eq!(scale(-12.34e-12, Unit::Capacitance), (1e-12, "pF"));
         assert_eq!(scale(0.0, Unit::Charge), (1.0, "C"));

@@ -68,7 +68,7 @@ pub enum JobProblem {
     },
     /// A key that its section does not take.
     #[error("`{key}` is not a key of {section}")]
-    #[diagnostic(code(job::unknown_key), help("{}", spelling(nearest.as_deref(), "write", known)))]
+    #[diagnostic(code(job::unknown_key), help("{}", spelling(nearest.as_deref(), known)))]
     UnknownKey {
         key: String,
         section: &'static str,
@@ -131,7 +131,7 @@ pub enum JobProblem {
     },
     /// A value outside of what makes sense.
     #[error("`{key}` is {found}, allowed: {allowed}")]
-    #[diagnostic(code(job::out_of_range), help("choose a value in the range: {allowed}"))]
+    #[diagnostic(code(job::out_of_range), help("choose another value: {allowed}"))]
     OutOfRange {
         key: &'static str,
         found: String,
@@ -176,7 +176,7 @@ pub enum JobProblem {
     },
     /// A word that is none of the choices.
     #[error("`{key}` is `{found}`, expected one of: {}", known.join(", "))]
-    #[diagnostic(code(job::unknown_word), help("{}", spelling(nearest.as_deref(), "write", known)))]
+    #[diagnostic(code(job::unknown_word), help("{}", spelling(nearest.as_deref(), known)))]
     UnknownWord {
         key: &'static str,
         found: String,
@@ -194,13 +194,13 @@ pub enum JobProblem {
         at: SourceSpan,
     },
     /// A list that needs more entries.
-    #[error("`{key}` has {found} entries, expected {expected}")]
+    #[error("`{key}` has {}, expected {expected}", entries(*found))]
     #[diagnostic(code(job::list_length), help("list {expected}, or leave the key out"))]
     ListLength {
         key: &'static str,
         found: usize,
         expected: &'static str,
-        #[label("{found} entries")]
+        #[label("{}", entries(*found))]
         at: SourceSpan,
     },
     /// Two keys that exclude each other.
@@ -266,7 +266,7 @@ pub enum JobProblem {
     },
     /// A name that the stackup lacks.
     #[error("the stackup has no layer `{name}`")]
-    #[diagnostic(code(job::unknown_layer), help("{}", spelling(nearest.as_deref(), "write", known)))]
+    #[diagnostic(code(job::unknown_layer), help("{}", spelling(nearest.as_deref(), known)))]
     UnknownLayer {
         name: String,
         nearest: Option<String>,
@@ -320,8 +320,11 @@ pub enum JobProblem {
         at: SourceSpan,
     },
     /// A net that is to do two things.
-    #[error("net `{net}` is listed under `{earlier}` and under `{role}`")]
-    #[diagnostic(code(job::net_with_two_roles), help("keep `{net}` in one place"))]
+    #[error("net `{net}` is listed under `{earlier}` and again under `{role}`")]
+    #[diagnostic(
+        code(job::net_with_two_roles),
+        help("keep one of the two; nets that are joined play one part")
+    )]
     NetWithTwoRoles {
         net: String,
         earlier: &'static str,
@@ -333,7 +336,7 @@ pub enum JobProblem {
     },
     /// A net that no shape draws, in a job without artwork.
     #[error("no shape draws net `{name}`, and the job has no artwork")]
-    #[diagnostic(code(job::unknown_net), help("{}", spelling(nearest.as_deref(), "write", known)))]
+    #[diagnostic(code(job::unknown_net), help("{}", spelling(nearest.as_deref(), known)))]
     UnknownNet {
         name: String,
         nearest: Option<String>,
@@ -343,7 +346,7 @@ pub enum JobProblem {
     },
     /// A material that the stackup does not use.
     #[error("the stackup has no layer or material `{name}`")]
-    #[diagnostic(code(job::unknown_material), help("{}", spelling(nearest.as_deref(), "write", known)))]
+    #[diagnostic(code(job::unknown_material), help("{}", spelling(nearest.as_deref(), known)))]
     UnknownMaterial {
         name: String,
         nearest: Option<String>,
@@ -418,12 +421,16 @@ impl JobProblem {
     }
 }
 
+fn entries(count: usize) -> String {
+    if count == 1 { "1 entry".to_owned() } else { format!("{count} entries") }
+}
+
 /// "write `x`", or the whole list when nothing comes near.
-fn spelling(nearest: Option<&str>, verb: &str, known: &[String]) -> String {
+fn spelling(nearest: Option<&str>, known: &[String]) -> String {
     match nearest {
-        Some(name) => format!("{verb} `{name}`"),
+        Some(name) => format!("write `{name}`"),
         None if known.is_empty() => "remove it; there is none to choose from".to_owned(),
-        None => format!("{verb} one of: {}", known.join(", ")),
+        None => format!("write one of: {}", known.join(", ")),
     }
 }
 

@@ -113,7 +113,7 @@ fn read_region(section: Section<'_>, notes: &mut Notes) -> Option<RegionChoice> 
         None => section.get("around")?,
     };
     let nets = around.names(notes)?;
-    if nets.is_empty() {
+    if around.is_empty_list() {
         around.list_length(0, "one net or more", notes);
     }
     Some(RegionChoice::Around { nets, margin })

@@ -11,7 +11,7 @@ use std::collections::BTreeMap;
 pub(super) fn read_nets(section: Section<'_>, notes: &mut Notes) -> NetRules {
     let words = [("ground", Others::Ground), ("float", Others::Float), ("rows", Others::Rows)];
     let rows = section.get("rows").and_then(|item| item.names(notes));
-    if let Some(item) = section.get("rows").filter(|_| rows.as_ref().is_some_and(Vec::is_empty)) {
+    if let Some(item) = section.get("rows").filter(|item| item.is_empty_list()) {
         item.list_length(0, "one net or more", notes);
     }
     let floating = section.get("float").map(|item| item.sections(&FLOAT, notes)).unwrap_or_default();
@@ -61,7 +61,7 @@ fn read_join(item: Item<'_>, notes: &mut Notes) -> Vec<Vec<Named>> {
     let mut joined = Vec::new();
     for group in groups {
         let Some(names) = group.names(notes) else { continue };
-        if names.len() < 2 {
+        if group.n_entries() < 2 {
             group.list_length(names.len(), "two nets or more in each group", notes);
         }
         joined.push(names);
@@ -76,8 +76,8 @@ fn read_planes(item: Item<'_>, notes: &mut Notes) -> Vec<Named> {
     }
     let planes = item.names(notes).unwrap_or_default();
     let repeated = planes.len() == 2 && planes[0].name == planes[1].name;
-    if planes.is_empty() || planes.len() > 2 || repeated {
-        item.list_length(planes.len(), "one or two different layers", notes);
+    if !(1..=2).contains(&item.n_entries()) || repeated {
+        item.list_length(item.n_entries(), "one or two different layers", notes);
     }
     planes
 }

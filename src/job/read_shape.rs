@@ -11,7 +11,7 @@ const OUTLINES: [&str; 4] = ["rectangle", "circle", "polygon", "stroke"];
 /// Every shape of the list.
 pub(super) fn read_shapes(item: Item<'_>, notes: &mut Notes) -> Vec<DrawnShape> {
     let sections = item.sections(&SHAPE, notes);
-    if sections.is_empty() && item.is_list() {
+    if item.is_empty_list() {
         item.list_length(0, "one shape or more", notes);
     }
     sections.into_iter().filter_map(|section| read_shape(section, notes)).collect()

@@ -33,6 +33,16 @@ impl Notes {
         self.problems.push(problem);
     }
 
+    /// How many problems are noted so far.
+    pub(super) fn n_problems(&self) -> usize {
+        self.problems.len()
+    }
+
+    /// Takes back the problems after the first `count`.
+    pub(super) fn forgive(&mut self, count: usize) {
+        self.problems.truncate(count);
+    }
+
     pub(super) fn warn(&mut self, text: String, span: Span) {
         self.warnings.push(Warning::new(text, Origin::new(self.file, span)));
     }
@@ -202,6 +212,10 @@ impl<'t> Item<'t> {
 
     pub(super) fn is_list(self) -> bool {
         self.value.get_ref().is_array()
+    }
+
+    pub(super) fn is_empty_list(self) -> bool {
+        self.is_list() && self.n_entries() == 0
     }
 
     /// A string, as it stands.

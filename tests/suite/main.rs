@@ -1,8 +1,10 @@
 //! The suite: one binary, one module per kind of check.
 #![expect(clippy::disallowed_methods, reason = "tests read files, which the library does not")]
-#![expect(clippy::unwrap_used, reason = "helpers of tests are tests as well")]
+#![expect(clippy::unwrap_used, clippy::panic, reason = "helpers of tests are tests as well")]
+#![expect(clippy::print_stdout, reason = "a test that skips says so")]
 
 mod closed_forms;
+mod job;
 mod mesh;
 mod solids;
 mod tidy;

@@ -4,45 +4,33 @@ use crate::diag::Span;
 use crate::job::MaterialPatch;
 use crate::job::error::JobProblem;
 use crate::job::gbrjob::listed::{EntryKind, Listed};
-use crate::job::patch::{Stated, complete_material, patch_for, warn_idle};
+use crate::job::patch::{Stated, complete_material, warn_idle};
 use crate::job::section::Notes;
 use crate::job::stackup::{Layer, LayerKind, Material, WideFace};
-use crate::job::structure::Patches;
 use crate::units::{Unit, brief};
 
 /// Copper of one ounce per square foot, m. Common practice; the finished thickness of plated outer layers is more.
 const COPPER: f64 = 35e-6;
 /// Liquid solder mask on laminate, m. Common practice, 15 to 30 um.
 const MASK: f64 = 20e-6;
-/// The material that `[materials]` may name for every mask that names none.
-const MASK_MATERIAL: &str = "SolderMask";
 
 /// The layers; those that lack something that cannot be assumed are left out, and a problem is noted.
 ///
 /// - `board`: thickness of the whole board in m, if stated.
-pub(super) fn build_layers(
-    mut listed: Vec<Listed>,
-    board: Option<f64>,
-    patches: &Patches,
-    notes: &mut Notes,
-) -> Vec<Layer> {
-    for entry in &mut listed {
-        if entry.kind == EntryKind::SolderMask && entry.material.is_none() {
-            entry.material = Some(MASK_MATERIAL.to_owned());
-        }
-        let patch = patch_for(patches, &entry.name, entry.material.as_deref());
-        complete_thickness(entry, patch.as_ref(), notes);
+pub(super) fn build_layers(mut listed: Vec<Listed>, board: Option<f64>, notes: &mut Notes) -> Vec<Layer> {
+    for entry in listed.iter_mut().filter(|entry| !entry.is_unusable) {
+        complete_thickness(entry, notes);
     }
     deduce_thickness(&mut listed, board, notes);
-    listed.into_iter().filter_map(|entry| build_layer(entry, patches, notes)).collect()
+    listed.into_iter().filter_map(|entry| build_layer(entry, notes)).collect()
 }
 
 /// From the job, else by common practice where there is one.
-fn complete_thickness(entry: &mut Listed, patch: Option<&MaterialPatch>, notes: &mut Notes) {
+fn complete_thickness(entry: &mut Listed, notes: &mut Notes) {
     if entry.thickness.is_some() {
         return;
     }
-    entry.thickness = patch.and_then(|patch| patch.thickness);
+    entry.thickness = entry.patch.as_ref().and_then(|patch| patch.thickness);
     let usual = match entry.kind {
         EntryKind::Copper => COPPER,
         EntryKind::SolderMask => MASK,
@@ -81,8 +69,11 @@ fn deduce_thickness(listed: &mut [Listed], board: Option<f64>, notes: &mut Notes
     }
 }
 
-fn build_layer(entry: Listed, patches: &Patches, notes: &mut Notes) -> Option<Layer> {
-    let patch = patch_for(patches, &entry.name, entry.material.as_deref());
+fn build_layer(entry: Listed, notes: &mut Notes) -> Option<Layer> {
+    if entry.is_unusable {
+        return None;
+    }
+    let patch = entry.patch.clone();
     let at = start_of(entry.span);
     if entry.thickness.is_none() {
         notes.problem(JobProblem::MissingThickness { layer: entry.name.clone(), at: at.into() });

@@ -1,11 +1,13 @@
 //! The entries of the layer list as the file states them, before anything is completed.
 
 use crate::diag::Span;
+use crate::job::MaterialPatch;
 use crate::job::error::{JobProblem, nearest};
 use crate::job::gbrjob::fields::{Fields, plain};
+use crate::job::patch::patch_for;
 use crate::job::permittivity::{Er, LARGEST_ER};
 use crate::job::section::Notes;
-use crate::job::structure::unique_name;
+use crate::job::structure::{Patches, unique_name};
 use crate::units::{Unit, brief};
 
 /// What an entry is.
@@ -49,20 +51,33 @@ pub(super) struct Listed {
     pub(super) er: Option<Er>,
     pub(super) loss_tangent: Option<f64>,
     pub(super) prepreg: bool,
+    /// Whether a value is there that cannot be used; the problem is noted.
+    pub(super) is_unusable: bool,
+    /// What the job says of it.
+    pub(super) patch: Option<MaterialPatch>,
     pub(super) span: Span,
 }
 
+/// The material that `[materials]` may name for every mask that names none.
+const MASK_MATERIAL: &str = "SolderMask";
+
 /// The copper, dielectric and mask layers among `entries`, top to bottom, with unique names.
-pub(super) fn read_listed(entries: &[Fields<'_>], frequency: Option<f64>, notes: &mut Notes) -> Vec<Listed> {
+pub(super) fn read_listed(
+    entries: &[Fields<'_>],
+    patches: &Patches,
+    frequency: Option<f64>,
+    notes: &mut Notes,
+) -> Vec<Listed> {
     let kinds: Vec<Option<EntryKind>> = entries.iter().map(|entry| read_kind(entry, notes)).collect();
     let n_copper = kinds.iter().filter(|kind| **kind == Some(EntryKind::Copper)).count();
     let mut listed: Vec<Listed> = Vec::new();
+    let mut left_out: Vec<String> = Vec::new();
     let mut count = Count::default();
     for (entry, kind) in entries.iter().zip(kinds) {
         let Some(kind) = kind else { continue };
         if kind == EntryKind::Ignored {
             let name = entry.text("Name").or_else(|| entry.text("Type")).unwrap_or_default();
-            notes.warn(format!("`{name}` is left out: legend and paste are not modelled"), entry.span());
+            left_out.push(format!("`{name}`"));
             continue;
         }
         let made = count.next_name(kind, n_copper);
@@ -71,7 +86,13 @@ pub(super) fn read_listed(entries: &[Fields<'_>], frequency: Option<f64>, notes:
         if name != given {
             notes.warn(format!("a second layer `{given}` is called `{name}` here"), entry.place("Name"));
         }
-        listed.push(read_entry(entry, kind, name, frequency, notes));
+        let mut layer = name_entry(entry, kind, name, patches);
+        read_values(entry, &mut layer, frequency, notes);
+        listed.push(layer);
+    }
+    if let Some(first) = entries.first().filter(|_| !left_out.is_empty()) {
+        let text = format!("legend and paste are not modelled, left out: {}", left_out.join(", "));
+        notes.warn(text, first.span());
     }
     listed
 }
@@ -127,32 +148,54 @@ impl Count {
     }
 }
 
-fn read_entry(
-    entry: &Fields<'_>,
-    kind: EntryKind,
-    name: String,
-    frequency: Option<f64>,
-    notes: &mut Notes,
-) -> Listed {
-    let mut thickness = entry.length("Thickness", notes);
-    if thickness.is_some_and(|t| t <= 0.0) {
-        notes.warn(format!("the thickness 0 of `{name}` is taken as not given"), entry.place("Thickness"));
-        thickness = None;
-    }
-    let says_prepreg =
-        ["Type", "Material", "Notes", "Name"].iter().filter_map(|key| entry.text(key)).any(|text| {
-            let text = plain(&text);
-            text.contains("prepreg")
-        });
+/// What an entry is called and made of.
+fn name_entry(entry: &Fields<'_>, kind: EntryKind, name: String, patches: &Patches) -> Listed {
+    let usual = (kind == EntryKind::SolderMask).then(|| MASK_MATERIAL.to_owned());
+    let material = entry.text("Material").or(usual);
+    let says_prepreg = ["Type", "Material", "Notes", "Name"]
+        .iter()
+        .filter_map(|key| entry.text(key))
+        .any(|text| plain(&text).contains("prepreg"));
     Listed {
         kind,
-        material: entry.text("Material"),
-        thickness,
-        er: if kind == EntryKind::Copper { None } else { read_er(entry, &name, frequency, notes) },
-        loss_tangent: read_loss(entry, notes),
+        thickness: None,
+        er: None,
+        loss_tangent: None,
         prepreg: kind == EntryKind::Dielectric && says_prepreg,
+        is_unusable: false,
+        patch: patch_for(patches, &name, material.as_deref()),
         span: entry.span(),
+        material,
         name,
+    }
+}
+
+/// The numbers of an entry. One that makes no sense is a problem, unless the job gives the value.
+fn read_values(entry: &Fields<'_>, layer: &mut Listed, frequency: Option<f64>, notes: &mut Notes) {
+    let count = notes.n_problems();
+    layer.thickness = entry.length("Thickness", notes);
+    if layer.thickness.is_some_and(|t| t <= 0.0) {
+        let text = format!("the thickness 0 of `{}` is taken as not given", layer.name);
+        notes.warn(text, entry.place("Thickness"));
+        layer.thickness = None;
+    }
+    let is_patched = layer.patch.as_ref().is_some_and(|patch| patch.thickness.is_some());
+    forgive_patched(entry, "Thickness", is_patched, count, notes);
+    if layer.kind != EntryKind::Copper {
+        let count = notes.n_problems();
+        layer.er = read_er(entry, &layer.name, frequency, notes);
+        let is_patched = layer.patch.as_ref().is_some_and(|patch| patch.er.is_some());
+        forgive_patched(entry, "DielectricConstant", is_patched, count, notes);
+        layer.loss_tangent = read_loss(entry, notes);
+    }
+    layer.is_unusable = notes.n_problems() > count;
+}
+
+/// Turns the problems after the first `count` into a warning when the job gives the value.
+fn forgive_patched(entry: &Fields<'_>, key: &str, is_patched: bool, count: usize, notes: &mut Notes) {
+    if is_patched && notes.n_problems() > count {
+        notes.forgive(count);
+        notes.warn(format!("`{key}` cannot be used, the job's value is"), entry.place(key));
     }
 }
 

@@ -62,9 +62,9 @@ fn read_layers(
     }
     let list_start = entries.first().map_or(whole, |entry| entry.span());
     let board = root.table("GeneralSpecs").and_then(|specs| specs.length("BoardThickness", notes));
-    let listed = read_listed(&entries, frequency, notes);
+    let listed = read_listed(&entries, patches, frequency, notes);
     let n_listed = listed.len();
-    let mut layers = build_layers(listed, board, patches, notes);
+    let mut layers = build_layers(listed, board, notes);
     // Rules on the order make sense only when every layer is known.
     if layers.len() == n_listed {
         check_structure(&layers, Span { start: list_start.start, end: list_start.start + 1 }, notes);

@@ -1,10 +1,11 @@
 //! Job and stackup files: every key, real Gerber job files, and what is said when something is wrong.
 
+mod bad;
+mod board_files;
+mod complete;
+
 use chargeskin::diag::{FileId, Warned};
-use chargeskin::job::{
-    Accuracy, FileContent, HoleMeaning, Job, JobErrors, LayerKind, LayerQuantity, Others, Outline, RegionChoice,
-    Spread, Stackup, WideFace, check_names, read_gbrjob_stackup, read_job, read_stackup,
-};
+use chargeskin::job::{Job, JobErrors, Stackup, read_job, read_stackup};
 use miette::{GraphicalReportHandler, GraphicalTheme, NamedSource, Report};
 use std::collections::BTreeMap;
 
@@ -16,7 +17,8 @@ fn render(errors: JobErrors, name: &str, text: &str) -> String {
     let handler = GraphicalReportHandler::new_themed(GraphicalTheme::unicode_nocolor()).with_width(110);
     let mut out = String::new();
     handler.render_report(&mut out, report.as_ref()).unwrap();
-    out
+    // Trailing blanks would be lost in an editor.
+    out.lines().map(str::trim_end).collect::<Vec<_>>().join("\n")
 }
 
 fn job(text: &str) -> Warned<Job> {
