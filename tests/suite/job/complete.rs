@@ -239,7 +239,7 @@ fn every_key_of_a_stackup_is_read() {
     let LayerKind::Coating { depth_beside_copper, .. } = layer(&stackup, "mask-bottom").kind else {
         panic!("a coating");
     };
-    assert_eq!(depth_beside_copper, 12e-6, "as on copper");
+    assert_eq!(depth_beside_copper.to_bits(), 12e-6_f64.to_bits(), "as on copper");
     let LayerKind::Dielectric { thickness, prepreg, .. } = layer(&stackup, "core").kind else {
         panic!("a dielectric");
     };
@@ -247,7 +247,7 @@ fn every_key_of_a_stackup_is_read() {
     let core = layer(&stackup, "core").material().unwrap();
     assert_eq!((core.conductivity, core.loss_tangent), (Some(1e-12), Some(0.02)));
     assert_eq!((core.name.as_str(), core.er_source.as_str()), ("FR4", "job, table at 10 MHz"));
-    assert_eq!(layer(&stackup, "core-2").material().unwrap().er, core.er, "completed from the job");
+    assert_eq!(layer(&stackup, "core-2").material().map(|m| m.er), Some(core.er), "completed from the job");
     assert_eq!(layer(&stackup, "oil").material().unwrap().er_source, "stackup");
     let warnings: Vec<&str> = read.warnings.iter().map(|warning| warning.text.as_str()).collect();
     assert_eq!(warnings.len(), 1, "{warnings:?}");
@@ -281,5 +281,5 @@ fn the_job_fills_the_open_space() {
     let stackup = read_stackup(layers, FILE, &materials, None).unwrap().value;
     let oil = stackup.layers[0].material().unwrap();
     assert_eq!((oil.er, oil.er_source.as_str(), oil.name.as_str()), (2.2, "job", "above"));
-    assert_eq!(stackup.layers[2].material().unwrap().er, 1.0);
+    assert_eq!(stackup.layers[2].material().map(|m| m.er), Some(1.0));
 }
