@@ -3,6 +3,7 @@
 #![expect(clippy::unwrap_used, clippy::panic, reason = "helpers of tests are tests as well")]
 #![expect(clippy::print_stdout, reason = "a test that skips says so")]
 
+mod artwork;
 mod closed_forms;
 mod job;
 mod mesh;

@@ -1,0 +1,427 @@
+//! Copper that touches is one net: in a layer, through plated holes, and where posts stand on copper.
+//!
+//! Names come from the files, from shapes and from labels; what has none is numbered. Two names on one piece of
+//! metal are a short.
+
+use super::contact::{Part, contacts};
+use super::error::{ArtworkError, Problem};
+use super::{Artwork, ArtworkOptions, Copper, Hole, Lining, Pattern};
+use crate::diag::{Origin, Warning};
+use crate::geom::region::{Grid, Point, Region};
+use crate::job::{Job, LayerId, LayerKind, Stackup};
+use crate::net::{NameSource, NetTable};
+use std::collections::{BTreeMap, BTreeSet};
+
+/// Copper as the files give it.
+#[derive(Debug, Clone)]
+pub(super) struct DraftCopper {
+    pub(super) layer: LayerId,
+    /// `None`: no name.
+    pub(super) name: Option<String>,
+    pub(super) region: Region,
+    pub(super) origin: Origin,
+}
+
+/// A hole before its net is known.
+#[derive(Debug, Clone)]
+pub(super) struct DraftHole {
+    pub(super) region: Region,
+    pub(super) at: Point,
+    /// m.
+    pub(super) diameter: f64,
+    pub(super) from: LayerId,
+    pub(super) to: LayerId,
+    /// `None`: nobody says.
+    pub(super) plated: Option<bool>,
+    pub(super) origin: Origin,
+}
+
+/// Everything that was read, before nets are settled.
+#[derive(Debug, Clone, Default)]
+pub(super) struct Draft {
+    pub(super) copper: Vec<DraftCopper>,
+    pub(super) holes: Vec<DraftHole>,
+    pub(super) patterns: Vec<Pattern>,
+    pub(super) openings: Vec<Pattern>,
+    pub(super) profile: Option<Region>,
+}
+
+/// One connected thing: all metal of a name, one island without a name, or one plated hole.
+struct Node {
+    name: Option<String>,
+    origin: Origin,
+}
+
+/// The sets of nodes that are one net.
+struct Nodes {
+    nodes: Vec<Node>,
+    parent: Vec<usize>,
+}
+
+impl Nodes {
+    fn add(&mut self, name: Option<String>, origin: Origin) -> usize {
+        self.nodes.push(Node { name, origin });
+        self.parent.push(self.parent.len());
+        self.parent.len() - 1
+    }
+
+    fn root(&mut self, mut node: usize) -> usize {
+        while self.parent[node] != node {
+            self.parent[node] = self.parent[self.parent[node]];
+            node = self.parent[node];
+        }
+        node
+    }
+
+    /// Makes two nodes one; on two names returns them and changes nothing.
+    fn join(&mut self, a: usize, b: usize) -> Result<(), (String, String)> {
+        let (a, b) = (self.root(a), self.root(b));
+        if a == b {
+            return Ok(());
+        }
+        match (&self.nodes[a].name, &self.nodes[b].name) {
+            (Some(one), Some(other)) => {
+                let (one, other) = (one.clone(), other.clone());
+                Err(if one < other { (one, other) } else { (other, one) })
+            }
+            // The named one stays at the root, else the earlier one.
+            (Some(_), None) => {
+                self.parent[b] = a;
+                Ok(())
+            }
+            (None, Some(_)) => {
+                self.parent[a] = b;
+                Ok(())
+            }
+            (None, None) => {
+                self.parent[a.max(b)] = a.min(b);
+                Ok(())
+            }
+        }
+    }
+}
+
+/// A region of metal in a layer, and its node.
+struct Metal {
+    layer: LayerId,
+    node: usize,
+    region: Region,
+    origin: Origin,
+}
+
+/// Settles the nets.
+pub(super) fn connect(
+    mut draft: Draft,
+    job: &Job,
+    stackup: &Stackup,
+    options: &ArtworkOptions,
+    warnings: &mut Vec<Warning>,
+) -> Result<Artwork, Vec<ArtworkError>> {
+    let ArtworkOptions { grid, chord_error } = *options;
+    let mut errors = Vec::new();
+    settle_plating(&mut draft, warnings);
+    drill_out(&mut draft, stackup, warnings);
+    let mut nodes = Nodes { nodes: Vec::new(), parent: Vec::new() };
+    let mut metal = gather(draft.copper, &mut nodes);
+    let n_copper_nodes = nodes.nodes.len();
+    let hole_nodes: Vec<Option<usize>> = draft
+        .holes
+        .iter()
+        .map(|hole| (hole.plated == Some(true)).then(|| nodes.add(None, hole.origin)))
+        .collect();
+    label(job, stackup, grid, &metal, &mut nodes, &mut errors);
+    let layers = LayerParts { metal: &metal, holes: &draft.holes, hole_nodes: &hole_nodes };
+    let mut seen = BTreeSet::new();
+    for (layer, _) in stackup.iter() {
+        layers.join(layer, stackup, grid, (&mut nodes, &mut seen, &mut errors));
+    }
+    if !errors.is_empty() {
+        return Err(errors);
+    }
+    let nets = name_nodes(&mut nodes, n_copper_nodes);
+    let copper = merge(&mut metal, &nets.1);
+    let holes = draft.holes.into_iter().zip(hole_nodes).map(|(hole, node)| Hole {
+        region: hole.region,
+        at: hole.at,
+        diameter: hole.diameter,
+        from: hole.from,
+        to: hole.to,
+        lining: node.map_or(Lining::Bare, |node| Lining::Plated(nets.1[node])),
+        origin: hole.origin,
+    });
+    Ok(Artwork {
+        grid,
+        holes: holes.collect(),
+        nets: nets.0,
+        copper,
+        patterns: draft.patterns,
+        openings: draft.openings,
+        profile: draft.profile,
+        chord_error,
+    })
+}
+
+/// Holes of which nobody says whether they are plated: plated where they meet copper, bare elsewhere.
+fn settle_plating(draft: &mut Draft, warnings: &mut Vec<Warning>) {
+    let copper = &draft.copper;
+    let (mut plated, mut bare, mut origin) = (0, 0, None);
+    for hole in draft.holes.iter_mut().filter(|hole| hole.plated.is_none()) {
+        let Some(bounds) = hole.region.bounds() else { continue };
+        let meets = copper.iter().any(|c| {
+            (hole.from..=hole.to).contains(&c.layer)
+                && c.region.bounds().is_some_and(|b| b.meets(&bounds))
+                && !c.region.intersection(&hole.region).is_empty()
+        });
+        hole.plated = Some(meets);
+        if meets {
+            plated += 1
+        } else {
+            bare += 1
+        }
+        origin.get_or_insert(hole.origin);
+    }
+    if let Some(origin) = origin {
+        let text = format!(
+            "whether holes are plated is not said: the {plated} that meet copper are taken as plated, the {bare} others as bare; `plated = true` or `false` in the job settles it"
+        );
+        warnings.push(Warning::new(text, origin));
+    }
+}
+
+/// Copper inside bare holes is gone.
+fn drill_out(draft: &mut Draft, stackup: &Stackup, warnings: &mut Vec<Warning>) {
+    let bare: Vec<&DraftHole> = draft.holes.iter().filter(|hole| hole.plated == Some(false)).collect();
+    let Some(first) = bare.first() else { return };
+    let mut cut = 0;
+    for copper in &mut draft.copper {
+        let Some(bounds) = copper.region.bounds() else { continue };
+        let here = bare.iter().filter(|hole| (hole.from..=hole.to).contains(&copper.layer));
+        let met: Vec<&Region> =
+            here.map(|h| &h.region).filter(|r| r.bounds().is_some_and(|b| b.meets(&bounds))).collect();
+        if met.is_empty() {
+            continue;
+        }
+        let drilled = copper.region.difference(&Region::union_all(met));
+        if (drilled.area() - copper.region.area()).abs() > 0.5 {
+            cut += 1;
+            copper.region = drilled;
+        }
+    }
+    if cut > 0 {
+        let text = format!(
+            "copper inside unplated holes is removed ({cut} layer and net pairs of {} layers)",
+            stackup.layers.len()
+        );
+        warnings.push(Warning::new(text, first.origin));
+    }
+}
+
+/// Regions of one name in one layer, and what made them.
+type Group = Vec<(Region, Origin)>;
+
+/// All metal of a name in a layer is one region with the name's node; each island without a name has a node of its own.
+fn gather(copper: Vec<DraftCopper>, nodes: &mut Nodes) -> Vec<Metal> {
+    let mut groups: BTreeMap<(LayerId, Option<String>), Group> = BTreeMap::new();
+    let mut names: BTreeMap<String, usize> = BTreeMap::new();
+    for part in copper {
+        if let Some(name) = &part.name
+            && !names.contains_key(name)
+        {
+            names.insert(name.clone(), nodes.add(Some(name.clone()), part.origin));
+        }
+        groups.entry((part.layer, part.name)).or_default().push((part.region, part.origin));
+    }
+    let mut metal = Vec::new();
+    for ((layer, name), parts) in groups {
+        let origin = parts[0].1;
+        let region = match parts.as_slice() {
+            [(only, _)] => only.clone(),
+            several => Region::union_all(several.iter().map(|(region, _)| region)),
+        };
+        match name.and_then(|name| names.get(&name).copied()) {
+            Some(node) => metal.push(Metal { layer, node, region, origin }),
+            None => {
+                let mut pieces = region.pieces();
+                pieces.sort_by_key(|piece| piece.bounds().map(|b| (b.lo.x, b.lo.y, b.hi.x, b.hi.y)));
+                for region in pieces {
+                    let node = nodes.add(None, origin);
+                    metal.push(Metal { layer, node, region, origin });
+                }
+            }
+        }
+    }
+    metal.retain(|m| !m.region.is_empty());
+    metal
+}
+
+/// Names copper at the points that the job gives.
+fn label(
+    job: &Job,
+    stackup: &Stackup,
+    grid: Grid,
+    metal: &[Metal],
+    nodes: &mut Nodes,
+    errors: &mut Vec<ArtworkError>,
+) {
+    for label in &job.nets.labels {
+        let layer = stackup.find(&label.layer.name);
+        let at = grid.snap(label.at[0]).zip(grid.snap(label.at[1]));
+        let (Some(layer), Some((x, y))) = (layer, at) else {
+            errors.push(ArtworkError::at(
+                label.layer.origin,
+                Problem::UnknownLayer {
+                    name: label.layer.name.clone(),
+                    known: stackup.layers.iter().map(|l| l.name.clone()).collect(),
+                    span: label.layer.origin.span,
+                },
+            ));
+            continue;
+        };
+        let place = [label.at[0] * 1e3, label.at[1] * 1e3];
+        let Some(hit) = metal.iter().find(|m| m.layer == layer && m.region.contains(Point::new(x, y))) else {
+            errors.push(ArtworkError::at(
+                label.net.origin,
+                Problem::LabelMisses {
+                    net: label.net.name.clone(),
+                    layer: label.layer.name.clone(),
+                    at_mm: place,
+                    span: label.net.origin.span,
+                },
+            ));
+            continue;
+        };
+        let known = nodes.nodes.iter().position(|n| n.name.as_deref() == Some(&label.net.name));
+        let node = known.unwrap_or_else(|| nodes.add(Some(label.net.name.clone()), label.net.origin));
+        if let Err((a, b)) = nodes.join(hit.node, node) {
+            errors.push(ArtworkError::at(
+                label.net.origin,
+                Problem::Short {
+                    a,
+                    b,
+                    layer: label.layer.name.clone(),
+                    at_mm: place,
+                    span: label.net.origin.span,
+                },
+            ));
+        }
+    }
+}
+
+struct LayerParts<'a> {
+    metal: &'a [Metal],
+    holes: &'a [DraftHole],
+    hole_nodes: &'a [Option<usize>],
+}
+
+impl LayerParts<'_> {
+    /// Joins what touches in `layer`; metal that stands on it in an adjoining dielectric counts as touching.
+    fn join(
+        &self,
+        layer: LayerId,
+        stackup: &Stackup,
+        grid: Grid,
+        (nodes, seen, errors): (&mut Nodes, &mut BTreeSet<(String, String)>, &mut Vec<ArtworkError>),
+    ) {
+        let is_dielectric = |id: LayerId| {
+            stackup.layers.get(id.idx()).is_some_and(|l| matches!(l.kind, LayerKind::Dielectric { .. }))
+        };
+        let stands_on =
+            |m: &&Metal| m.layer == layer || (m.layer.0.abs_diff(layer.0) == 1 && is_dielectric(m.layer));
+        let mut parts: Vec<Part<'_>> = Vec::new();
+        let mut origins = Vec::new();
+        for m in self.metal.iter().filter(stands_on) {
+            parts.push(Part { node: u32::try_from(m.node).unwrap_or(u32::MAX), region: &m.region });
+            origins.push(m.origin);
+        }
+        if !self.metal.iter().any(|m| m.layer == layer) {
+            return;
+        }
+        for (hole, node) in self.holes.iter().zip(self.hole_nodes) {
+            if let Some(node) = node
+                && (hole.from..=hole.to).contains(&layer)
+            {
+                parts.push(Part { node: u32::try_from(*node).unwrap_or(u32::MAX), region: &hole.region });
+                origins.push(hole.origin);
+            }
+        }
+        let node = |k: usize| parts[k].node as usize;
+        let cell = std::cell::RefCell::new(nodes);
+        contacts(
+            &parts,
+            |a, b| {
+                let mut nodes = cell.borrow_mut();
+                nodes.root(node(a)) == nodes.root(node(b))
+            },
+            |a, b, at| {
+                if let Err((one, other)) = cell.borrow_mut().join(node(a), node(b))
+                    && seen.insert((one.clone(), other.clone()))
+                {
+                    let mm = |steps: i64| (grid.length(steps) * 1e9).round() / 1e6;
+                    errors.push(ArtworkError::at(
+                        origins[a],
+                        Problem::Short {
+                            a: one,
+                            b: other,
+                            layer: stackup.get(layer).name.clone(),
+                            at_mm: [mm(at.x), mm(at.y)],
+                            span: origins[a].span,
+                        },
+                    ));
+                }
+            },
+        );
+    }
+}
+
+/// The table of nets, and the net of every node: given names first, in the order in which they were met; then islands
+/// in the order of their layer and place; then holes that touch nothing.
+fn name_nodes(nodes: &mut Nodes, n_copper_nodes: usize) -> (NetTable, Vec<crate::net::NetId>) {
+    let mut table = NetTable::default();
+    for node in &nodes.nodes {
+        if let Some(name) = &node.name {
+            table.intern(name, NameSource::Given, node.origin);
+        }
+    }
+    let mut number = 0;
+    let mut of_root: BTreeMap<usize, crate::net::NetId> = BTreeMap::new();
+    let mut ids = Vec::with_capacity(nodes.nodes.len());
+    debug_assert!(n_copper_nodes <= nodes.nodes.len());
+    for node in 0..nodes.nodes.len() {
+        let root = nodes.root(node);
+        let id = *of_root.entry(root).or_insert_with(|| {
+            let Node { name, origin } = &nodes.nodes[root];
+            if let Some(name) = name {
+                return table.intern(name, NameSource::Given, *origin);
+            }
+            loop {
+                number += 1;
+                let name = format!("island-{number}");
+                if table.find(&name).is_none() {
+                    return table.intern(&name, NameSource::Numbered, *origin);
+                }
+            }
+        });
+        ids.push(id);
+    }
+    (table, ids)
+}
+
+/// One region per layer and net.
+fn merge(metal: &mut Vec<Metal>, net_of: &[crate::net::NetId]) -> Vec<Copper> {
+    let mut groups: BTreeMap<(LayerId, crate::net::NetId), Vec<Metal>> = BTreeMap::new();
+    for m in metal.drain(..) {
+        groups.entry((m.layer, net_of[m.node])).or_default().push(m);
+    }
+    groups
+        .into_iter()
+        .map(|((layer, net), mut parts)| {
+            let origin = parts[0].origin;
+            let region = if parts.len() == 1 {
+                std::mem::take(&mut parts[0].region)
+            } else {
+                Region::union_all(parts.iter().map(|m| &m.region))
+            };
+            Copper { layer, net, region, origin }
+        })
+        .collect()
+}
