@@ -1,8 +1,96 @@
-//! [`SlabModel`](crate::slab::SlabModel) to [`Faces`]: oriented flat surfaces, by one rule.
+//! [`SlabModel`] to [`Faces`]: oriented flat surfaces, by one rule.
+//!
+//! Metal against a dielectric gives a conductor face, two different permittivities an interface, all else nothing
+//! (`rule`). Outlines are first made to meet in common corners only (`conform`), so that horizontal faces and walls
+//! close without gaps. What is small where charge crowds is the business of `mesh`; here edges are only marked.
 
+mod assemble;
+mod body;
+mod conform;
+mod error;
+mod grade;
+mod horizontal;
+mod outline;
+mod rule;
+mod wall;
+
+use crate::diag::Warned;
+use crate::faces::assemble::Assembly;
+use crate::faces::body::{Bodies, Groups, on_border};
+use crate::faces::conform::{Conformed, conform};
 use crate::geom::Vec3;
+use crate::geom::region::{Bounds, Grid};
 use crate::net::{ModelNet, NetId};
-use crate::slab::ImagePlanes;
+use crate::slab::{Fill, ImagePlanes, SlabModel};
+
+pub use error::FacesError;
+
+/// The surfaces of `model` that carry charge.
+///
+/// Surfaces are closed: the faces of a conductor, and of a finite dielectric body, add up to no vector area (except
+/// where copper goes on past the extent). Coordinates are in m from here on.
+///
+/// # Errors
+/// - [`FacesError::Short`] when metal of two nets touches.
+/// - [`FacesError::InfiniteCell`] when a half-space holds a cell.
+/// - [`FacesError::LeaningWall`] when foot and top of a leaning wall meet different cells.
+/// - [`FacesError::NoMetal`] when there is no conductor face at all.
+pub fn derive(model: &SlabModel) -> Result<Warned<Faces>, FacesError> {
+    let conformed = conform(model)?;
+    let bodies = Bodies::new(model, &conformed);
+    let levels = horizontal::levels(model, &conformed);
+    let mut out = Assembly { model, bodies, groups: Groups::default(), faces: Vec::new() };
+    horizontal::horizontal_faces(model, &conformed, &levels, &mut out)?;
+    wall::wall_faces(model, &conformed, &levels, &mut out)?;
+    if !out.faces.iter().any(|face| matches!(face.kind, FaceKind::Conductor { .. } | FaceKind::Sheet { .. }))
+    {
+        return Err(FacesError::NoMetal);
+    }
+    let open = out.groups.list.iter().any(|group| group.open);
+    let er = |slab: Option<&crate::slab::Slab>, plane: Option<f64>| match (slab, plane) {
+        (Some(slab), None) => Some(model.materials[slab.background.0 as usize].er),
+        _ => None,
+    };
+    Ok(Warned::clean(Faces {
+        faces: out.faces,
+        groups: out.groups.list,
+        nets: model.nets.clone(),
+        bodies: out.bodies.list,
+        planes: model.planes,
+        truncation: open.then(|| truncation(model, &conformed)),
+        outer_er: OuterEr {
+            above: er(model.slabs.last(), model.planes.above),
+            below: er(model.slabs.first(), model.planes.below),
+        },
+    }))
+}
+
+/// The copper that does not go on past the extent, and the extent, as centre and half-widths.
+fn truncation(model: &SlabModel, conformed: &Conformed) -> Truncation {
+    let cells = conformed.slabs.iter().flatten().filter(|cell| matches!(cell.fill, Fill::Metal(_)));
+    let cells = cells.map(|cell| [cell.bottom.as_slice(), cell.top.as_slice()].concat());
+    let sheets = conformed.sheets.iter().flatten().map(|sheet| sheet.rings.clone());
+    let mut copper: Option<Bounds> = None;
+    for rings in cells.chain(sheets) {
+        let points = || rings.iter().flat_map(|ring| &ring.points);
+        if points().any(|p| on_border(*p, &model.extent)) {
+            continue;
+        }
+        for p in points() {
+            let sum = copper.get_or_insert(Bounds { lo: *p, hi: *p });
+            (sum.lo.x, sum.lo.y) = (sum.lo.x.min(p.x), sum.lo.y.min(p.y));
+            (sum.hi.x, sum.hi.y) = (sum.hi.x.max(p.x), sum.hi.y.max(p.y));
+        }
+    }
+    let copper = copper.unwrap_or(model.window);
+    let centre = |lo: i64, hi: i64, grid: Grid| 0.5 * (grid.length(lo) + grid.length(hi));
+    let half = |lo: i64, hi: i64| 0.5 * model.grid.length(hi - lo);
+    Truncation {
+        centre: [centre(copper.lo.x, copper.hi.x, model.grid), centre(copper.lo.y, copper.hi.y, model.grid)],
+        copper: [half(copper.lo.x, copper.hi.x), half(copper.lo.y, copper.hi.y)],
+        extent: [half(model.extent.lo.x, model.extent.hi.x), half(model.extent.lo.y, model.extent.hi.y)],
+    }
+}
 
 /// Every surface that carries charge. Tests build bodies that are not slabs directly as `Faces`.
 #[derive(Debug, Clone, PartialEq, Default)]

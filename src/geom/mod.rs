@@ -1,7 +1,9 @@
 //! Geometry without electrostatics: vectors, grid regions, flat panel shapes.
 
+pub mod offset;
 pub mod panel_shape;
 pub mod region;
+pub mod snap;
 
 pub use panel_shape::PanelShape;
 pub use region::{Contour, Grid, Point, Region};

@@ -129,6 +129,11 @@ impl Region {
         Region::default()
     }
 
+    /// The region with these shapes: disjoint, outer rings counter-clockwise, holes clockwise.
+    pub(in crate::geom) fn from_shapes(shapes: Vec<Shape>) -> Self {
+        Region { shapes }
+    }
+
     /// What `contours`, which may overlap and cross, cover under `fill`.
     #[must_use]
     pub fn from_contours(contours: &[Contour], fill: Fill) -> Self {

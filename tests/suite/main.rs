@@ -7,5 +7,6 @@ mod artwork;
 mod closed_forms;
 mod job;
 mod mesh;
+mod slab;
 mod solids;
 mod tidy;
