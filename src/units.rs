@@ -170,8 +170,9 @@ impl Unit {
         self.spec().example
     }
 
-    /// For messages: what is wanted, an example, and the symbols.
-    fn expected(self) -> String {
+    /// Every symbol that a text may carry.
+    #[must_use]
+    pub fn symbols(self) -> Vec<String> {
         let spec = self.spec();
         let mut symbols: Vec<String> =
             spec.prefixes.chars().map(|prefix| format!("{prefix}{}", spec.base)).collect();
@@ -179,7 +180,13 @@ impl Unit {
             symbols.push(spec.base.to_owned());
         }
         symbols.extend(spec.extra.iter().map(|(symbol, _)| (*symbol).to_owned()));
-        format!("{} such as \"{}\" (units: {})", spec.what, spec.example, symbols.join(", "))
+        symbols
+    }
+
+    /// For messages: what is wanted, an example, and the symbols.
+    fn expected(self) -> String {
+        let spec = self.spec();
+        format!("{} such as \"{}\" (units: {})", spec.what, spec.example, self.symbols().join(", "))
     }
 
     fn scale_of(self, symbol: &str) -> Option<Scale> {

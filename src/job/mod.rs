@@ -13,6 +13,7 @@ mod read_layer;
 mod read_nets;
 mod read_shape;
 mod read_stackup;
+mod schema;
 mod section;
 pub mod stackup;
 mod structure;
@@ -26,6 +27,7 @@ pub use error::{JobErrors, JobProblem};
 pub use gbrjob::read_gbrjob_stackup;
 pub use read::read_job;
 pub use read_stackup::read_stackup;
+pub use schema::{SchemaKind, schema};
 pub use stackup::{Layer, LayerId, LayerKind, LayerQuantity, Material, Spread, Stackup, Tolerance, WideFace};
 
 /// A name as the user wrote it, and where.

@@ -4,9 +4,10 @@ use super::{FILE, job, stackup};
 use chargeskin::diag::Warned;
 use chargeskin::job::{
     Accuracy, FileContent, HoleMeaning, Layer, LayerKind, LayerQuantity, Others, Outline, RegionChoice,
-    Spread, Stackup, WideFace, check_names, read_stackup,
+    Spread, Stackup, WideFace, check_names, read_gbrjob_stackup, read_stackup,
 };
 use std::f64::consts::FRAC_PI_2;
+use std::path::Path;
 
 /// Every key of a job file but `window` and `stroke`, `circle` and `polygon` at the top level.
 pub(super) const JOB: &str = r#"
@@ -282,4 +283,22 @@ fn the_job_fills_the_open_space() {
     let oil = stackup.layers[0].material().unwrap();
     assert_eq!((oil.er, oil.er_source.as_str(), oil.name.as_str()), (2.2, "job", "above"));
     assert_eq!(stackup.layers[2].material().map(|m| m.er), Some(1.0));
+}
+
+/// What: the jobs of the project itself are read, and fit their stackups.
+#[test]
+fn the_fixtures_are_read() {
+    let root = Path::new(env!("CARGO_MANIFEST_DIR")).join("fixtures");
+    for name in ["oil-probe", "via-fan", "lift-plate"] {
+        let folder = root.join(name);
+        let text = std::fs::read_to_string(folder.join("job.toml")).unwrap();
+        let job = job(&text).value;
+        let layers = std::fs::read_to_string(folder.join(&job.stackup.name)).unwrap();
+        let read = if job.stackup.name.ends_with(".gbrjob") {
+            read_gbrjob_stackup(&layers, FILE, &job.materials, job.frequency)
+        } else {
+            read_stackup(&layers, FILE, &job.materials, job.frequency)
+        };
+        assert_eq!(check_names(&job, &read.unwrap().value), Ok(()), "{name}");
+    }
 }
