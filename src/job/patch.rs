@@ -83,6 +83,14 @@ pub(super) fn complete_material(
     })
 }
 
+/// Warns when the job gives a thickness that the stackup gives as well: it only completes.
+pub(super) fn warn_idle_thickness(patch: Option<&MaterialPatch>, layer: &str, notes: &mut Notes) {
+    if let Some(patch) = patch.filter(|patch| patch.thickness.is_some()) {
+        let text = format!("`thickness` has no effect on `{layer}`: the stackup gives it");
+        notes.warn_at(text, patch.origin);
+    }
+}
+
 /// Warns when the job states a permittivity for a conductor, where it has no effect.
 pub(super) fn warn_idle(patch: Option<&MaterialPatch>, layer: &str, notes: &mut Notes) {
     if let Some(patch) = patch.filter(|patch| patch.er.is_some()) {

@@ -1,7 +1,7 @@
 //! One `[[layer]]` of a stackup file.
 
 use crate::job::error::JobProblem;
-use crate::job::patch::{Stated, complete_material, patch_for, warn_idle};
+use crate::job::patch::{Stated, complete_material, patch_for, warn_idle, warn_idle_thickness};
 use crate::job::permittivity::read_er;
 use crate::job::section::{Item, Notes, Section, Size};
 use crate::job::stackup::{Layer, LayerKind, Material, WideFace};
@@ -109,7 +109,7 @@ fn read_material(
         at: text.name.origin.span,
     };
     let material = complete_material(stated, text.patch, notes)?;
-    Some(Material { conductivity, strength: strength.or(material.strength), ..material })
+    Some(Material { conductivity, strength: material.strength.or(strength), ..material })
 }
 
 /// A loss tangent: zero or more, and far below the hundreds of a conductor.
@@ -143,24 +143,35 @@ fn not_negative(item: Item<'_>, unit: Unit, notes: &mut Notes) -> Option<f64> {
 
 fn read_coating(text: LayerText<'_>, material: Option<Material>, notes: &mut Notes) -> Option<LayerKind> {
     let section = text.section;
-    let depth = |item: Item<'_>, notes: &mut Notes| item.length(Size::NotNegative, notes);
-    let on_laminate = section
-        .require("depth_on_laminate", "a depth such as `depth_on_laminate = \"25 um\"`", notes)
-        .and_then(|item| depth(item, notes));
-    let on_copper = section
-        .require("depth_on_copper", "a depth such as `depth_on_copper = \"12 um\"`", notes)
-        .and_then(|item| depth(item, notes));
-    let beside = match section.get("depth_beside_copper") {
-        Some(item) => depth(item, notes),
-        None => on_copper,
-    };
+    let patched = |value: fn(&MaterialPatch) -> Option<f64>| text.patch.and_then(value);
+    let on_laminate = read_depth(section, "depth_on_laminate", patched(|patch| patch.thickness), notes);
+    let on_copper = read_depth(section, "depth_on_copper", patched(|patch| patch.depth_on_copper), notes);
+    let beside = read_depth(section, "depth_beside_copper", on_copper, notes);
+    if section.get("depth_on_laminate").is_some() {
+        warn_idle_thickness(text.patch, &text.name.name, notes);
+    }
+    // A depth that is there but wrong is reported where it is read.
+    if on_laminate.is_none() {
+        section.require("depth_on_laminate", "a depth such as `depth_on_laminate = \"25 um\"`", notes);
+    }
+    if on_copper.is_none() {
+        section.require("depth_on_copper", "a depth such as `depth_on_copper = \"12 um\"`", notes);
+    }
     let (depth_on_laminate, depth_on_copper, depth_beside_copper) = (on_laminate?, on_copper?, beside?);
     if depth_on_laminate <= 0.0 && depth_on_copper <= 0.0 {
-        let item = section.get("depth_on_laminate")?;
+        let item = section.get("depth_on_laminate").or(section.get("depth_on_copper"))?;
         item.out_of_range("0 um, as on copper".to_owned(), "more than zero on laminate or on copper", notes);
         return None;
     }
     Some(LayerKind::Coating { material: material?, depth_on_laminate, depth_on_copper, depth_beside_copper })
+}
+
+/// The depth under `key`, else `other`.
+fn read_depth(section: Section<'_>, key: &'static str, other: Option<f64>, notes: &mut Notes) -> Option<f64> {
+    match section.get(key) {
+        Some(item) => item.length(Size::NotNegative, notes),
+        None => other,
+    }
 }
 
 fn read_conductor(text: LayerText<'_>, notes: &mut Notes) -> Option<LayerKind> {
@@ -209,10 +220,11 @@ fn read_slope(item: Item<'_>, notes: &mut Notes) -> Option<f64> {
 fn read_dielectric(text: LayerText<'_>, material: Option<Material>, notes: &mut Notes) -> Option<LayerKind> {
     let section = text.section;
     let thickness = read_thickness(text, Size::Positive, notes);
-    let prepreg = match section.get("prepreg") {
+    let stated = match section.get("prepreg") {
         Some(item) => item.flag(notes),
-        None => Some(text.patch.and_then(|patch| patch.prepreg).unwrap_or(false)),
+        None => Some(false),
     };
+    let prepreg = text.patch.and_then(|patch| patch.prepreg).or(stated);
     let fill = section.get("fill").and_then(|item| item.name(notes));
     let pattern = section.get("pattern").and_then(|item| item.name(notes));
     Some(LayerKind::Dielectric {
@@ -234,6 +246,7 @@ fn read_thickness(text: LayerText<'_>, size: Size, notes: &mut Notes) -> Option<
         }
         return patched;
     };
+    warn_idle_thickness(text.patch, &layer, notes);
     let thickness = item.length(Size::NotNegative, notes)?;
     if size == Size::Positive && thickness <= 0.0 {
         let found = brief(thickness, Unit::Length);

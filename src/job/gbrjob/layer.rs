@@ -4,7 +4,7 @@ use crate::diag::Span;
 use crate::job::MaterialPatch;
 use crate::job::error::JobProblem;
 use crate::job::gbrjob::listed::{EntryKind, Listed};
-use crate::job::patch::{Stated, complete_material, warn_idle};
+use crate::job::patch::{Stated, complete_material, warn_idle, warn_idle_thickness};
 use crate::job::section::Notes;
 use crate::job::stackup::{Layer, LayerKind, Material, WideFace};
 use crate::units::{Unit, brief};
@@ -28,6 +28,7 @@ pub(super) fn build_layers(mut listed: Vec<Listed>, board: Option<f64>, notes: &
 /// From the job, else by common practice where there is one.
 fn complete_thickness(entry: &mut Listed, notes: &mut Notes) {
     if entry.thickness.is_some() {
+        warn_idle_thickness(entry.patch.as_ref(), &entry.name, notes);
         return;
     }
     entry.thickness = entry.patch.as_ref().and_then(|patch| patch.thickness);

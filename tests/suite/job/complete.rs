@@ -251,7 +251,8 @@ fn every_key_of_a_stackup_is_read() {
     assert_eq!(layer(&stackup, "core-2").material().map(|m| m.er), Some(core.er), "completed from the job");
     assert_eq!(layer(&stackup, "oil").material().unwrap().er_source, "stackup");
     let warnings: Vec<&str> = read.warnings.iter().map(|warning| warning.text.as_str()).collect();
-    assert_eq!(warnings.len(), 1, "{warnings:?}");
+    assert_eq!(warnings.len(), 2, "{warnings:?}");
+    assert_eq!(warnings[1], "`thickness` has no effect on `mask-bottom`: the stackup gives it");
     assert!(warnings[0].starts_with("`er` of `core` is 4.3 in the stackup and 4.4"), "{}", warnings[0]);
     let unused: Vec<&str> = stackup.unused.iter().map(|entry| entry.name.as_str()).collect();
     assert!(

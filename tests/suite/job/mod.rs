@@ -3,6 +3,7 @@
 mod bad;
 mod board_files;
 mod complete;
+mod page;
 
 use chargeskin::diag::{FileId, Warned};
 use chargeskin::job::{Job, JobErrors, Stackup, read_job, read_stackup};
