@@ -149,11 +149,12 @@ pub(super) fn check_drawn_nets(job: &Job, notes: &mut Notes) {
         .chain(rules.floating.iter().map(|float| &float.net))
         .chain(rules.join.iter().flatten())
         .chain(around);
-    for net in named.filter(|net| drawn.binary_search(&net.name.as_str()).is_err()) {
+    // A search for the nearest of many names takes its time: a hundred problems of one sort say enough.
+    for net in named.filter(|net| drawn.binary_search(&net.name.as_str()).is_err()).take(100) {
         notes.problem(JobProblem::UnknownNet {
             name: net.name.clone(),
             nearest: nearest(&net.name, drawn.iter().copied()),
-            known: drawn.iter().map(|name| (*name).to_owned()).collect(),
+            known: drawn.iter().take(20).map(|name| (*name).to_owned()).collect(),
             at: net.origin.span.into(),
         });
     }

@@ -4,7 +4,7 @@ use crate::diag::{FileId, Span, Warned};
 use crate::job::error::JobErrors;
 use crate::job::keys;
 use crate::job::read_layer::read_layer;
-use crate::job::section::{Notes, Section, parse_toml, span_of};
+use crate::job::section::{MOST_LAYERS, Notes, Section, parse_toml, span_of};
 use crate::job::stackup::Stackup;
 use crate::job::structure::{Patches, check_structure, close_with_vacuum};
 
@@ -44,6 +44,10 @@ fn read_layers(
     let Some(list) = root.require("layer", "a `[[layer]]` for each layer, from top to bottom", notes) else {
         return;
     };
+    if list.n_entries() > MOST_LAYERS {
+        list.list_length(list.n_entries(), "1000 layers at most", notes);
+        return;
+    }
     let sections = list.sections(&keys::LAYER, notes);
     let n_sections = sections.len();
     for section in sections {

@@ -14,6 +14,10 @@ use toml::de::{DeTable, DeValue};
 pub(super) const LARGEST_LENGTH: f64 = 10.0;
 /// Sizes below this are taken for slips of the unit, m: smaller than an atom.
 const SMALLEST_SIZE: f64 = 1e-12;
+/// Problems beyond this are not kept: a file of noise must not fill the memory.
+const MOST_PROBLEMS: usize = 1000;
+/// More layers than this are taken for noise; no process makes a tenth of them.
+pub(super) const MOST_LAYERS: usize = 1000;
 
 /// What is noted while one file is read.
 #[derive(Debug)]
@@ -30,7 +34,9 @@ impl Notes {
     }
 
     pub(super) fn problem(&mut self, problem: JobProblem) {
-        self.problems.push(problem);
+        if self.problems.len() < MOST_PROBLEMS {
+            self.problems.push(problem);
+        }
     }
 
     /// How many problems are noted so far.

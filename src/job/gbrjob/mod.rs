@@ -9,7 +9,7 @@ mod listed;
 
 use crate::diag::{FileId, Span, Warned};
 use crate::job::error::{JobErrors, JobProblem};
-use crate::job::section::Notes;
+use crate::job::section::{MOST_LAYERS, Notes};
 use crate::job::stackup::{Layer, Stackup};
 use crate::job::structure::{Patches, check_structure, close_with_vacuum};
 use fields::Fields;
@@ -58,6 +58,15 @@ fn read_layers(
     let entries = root.list("MaterialStackup").unwrap_or_default();
     if entries.is_empty() {
         notes.problem(JobProblem::NoStackup { at: whole.into() });
+        return Vec::new();
+    }
+    if entries.len() > MOST_LAYERS {
+        notes.problem(JobProblem::ListLength {
+            key: "MaterialStackup",
+            found: entries.len(),
+            expected: "1000 layers at most",
+            at: whole.into(),
+        });
         return Vec::new();
     }
     let list_start = entries.first().map_or(whole, |entry| entry.span());

@@ -1,7 +1,7 @@
 //! Bad job and stackup files: each case is a text that is wrong in one way, and the snapshot shows what is said.
 
 use super::{FILE, job, render, stackup};
-use chargeskin::job::{JobErrors, check_names, read_job, read_stackup};
+use chargeskin::job::{JobErrors, check_names, read_gbrjob_stackup, read_job, read_stackup};
 use miette::Diagnostic;
 use std::collections::{BTreeMap, BTreeSet};
 
@@ -297,4 +297,28 @@ fn cut_and_changed_files_do_not_panic() {
             }
         }
     }
+}
+
+/// What: files of noise, some megabytes each, end soon and with a bounded list of problems.
+/// Tolerance: 20 s for each on a shared machine; a quadratic search over 100,000 entries would take hours.
+#[test]
+fn floods_are_borne() {
+    let many = |line: &dyn Fn(usize) -> String| (0..100_000).map(line).collect::<String>();
+    let keys = many(&|k| format!("k{k} = 1\n"));
+    let layers = "[[layer]]\nname = \"a\"\nkind = \"open\"\n".repeat(20_000);
+    let nets = format!(
+        "[nets]\nrows = [{}]\n[[shape]]\nnet = \"A\"\nlayer = \"t\"\ncircle = {{ at = [\"0 m\", \"0 m\"], diameter = \"1 mm\" }}\nstackup = 1\n",
+        many(&|k| format!("\"N{k}\","))
+    );
+    let copper = "{ \"Type\": \"Copper\" },".repeat(100_000);
+    let board = format!("{{ \"MaterialStackup\": [{}] }}", copper.trim_end_matches(','));
+    let start = std::time::Instant::now();
+    let counts = [
+        read_job(&keys, FILE).unwrap_err().problems().len(),
+        read_stackup(&layers, FILE, &BTreeMap::new(), None).unwrap_err().problems().len(),
+        read_job(&nets, FILE).unwrap_err().problems().len(),
+        read_gbrjob_stackup(&board, FILE, &BTreeMap::new(), None).unwrap_err().problems().len(),
+    ];
+    assert_eq!(counts, [1000, 1, 102, 1]);
+    assert!(start.elapsed().as_secs() < 80, "{:?}", start.elapsed());
 }
