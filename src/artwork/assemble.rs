@@ -7,6 +7,7 @@ use super::error::{ArtworkError, ArtworkErrors, Problem};
 use super::gerber::{self, Plot, image};
 use super::job_file::{self, Entry, base_name};
 use super::layer_role::{self, DrillRole, Role, Side};
+use super::netlist;
 use super::{Artwork, ArtworkOptions, InputFile, Pattern};
 use crate::diag::{Origin, Warned, Warning};
 use crate::geom::region::{Bounds, Fill, Point, Region};
@@ -62,6 +63,7 @@ enum Parsed {
     Gerber(Box<Plot>),
     Drill(Box<DrillFile>),
     JobFile(Vec<Entry>),
+    Netlist(Vec<netlist::TestPoint>),
     Other,
     Failed(Vec<Problem>),
 }
@@ -73,6 +75,14 @@ fn parse(file: &InputFile, options: &ArtworkOptions) -> Parsed {
         return match job_file::read(bytes) {
             Ok(entries) => Parsed::JobFile(entries),
             Err(reason) => failed(vec![Problem::JobFile { file: file.name.clone(), reason }]),
+        };
+    }
+    if netlist::has_signature(bytes) {
+        return match netlist::read(bytes, options.grid) {
+            Ok(points) => Parsed::Netlist(points),
+            Err((expected, span)) => {
+                failed(vec![Problem::Netlist { file: file.name.clone(), expected, span }])
+            }
         };
     }
     if drill::has_signature(bytes) {
@@ -140,7 +150,7 @@ impl Stage<'_> {
         }
         self.settle_inner(&mut roles);
         self.refuse_doubles(&mut roles);
-        let mut passed_over = Vec::new();
+        let (mut passed_over, mut unknown) = (Vec::new(), Vec::new());
         for (k, (parsed, role)) in parsed.into_iter().zip(roles).enumerate() {
             match (parsed, role) {
                 (Parsed::Failed(problems), role) => {
@@ -151,6 +161,10 @@ impl Stage<'_> {
                 }
                 (Parsed::Other, _) => passed_over.push(format!("`{}`", self.files[k].name)),
                 (Parsed::JobFile(_), _) => {}
+                (Parsed::Netlist(points), _) => {
+                    let file = self.files[k].file;
+                    self.draft.names.extend(points.into_iter().map(|p| (Origin::new(file, p.span), p)));
+                }
                 (Parsed::Gerber(plot), Some((role, source))) => {
                     if source == Source::Guess {
                         let text = format!(
@@ -163,9 +177,7 @@ impl Stage<'_> {
                     let entry = entries.iter().find(|e| e.name == base_name(&self.files[k].name));
                     self.gerber(k, *plot, role, entry);
                 }
-                (Parsed::Gerber(_), None) => {
-                    self.fail(k, Problem::UnknownRole { file: self.files[k].name.clone() });
-                }
+                (Parsed::Gerber(_), None) => unknown.push(k),
                 (Parsed::Drill(read), role) => {
                     let role = match role {
                         Some((Role::Drill(role), _)) => role,
@@ -181,12 +193,32 @@ impl Stage<'_> {
                 }
             }
         }
+        self.unknown(&unknown);
         if !passed_over.is_empty() {
             let text = format!(
                 "passed over, being neither Gerber nor drill nor job file: {}",
                 passed_over.join(", ")
             );
             self.warnings.push(Warning::new(text, Origin::default()));
+        }
+    }
+
+    /// Gerber files of which nothing says what they are: refused, unless every conductor has copper without them.
+    fn unknown(&mut self, files: &[usize]) {
+        let complete = self
+            .stackup
+            .conductors()
+            .all(|layer| self.draft.copper.iter().any(|copper| copper.layer == layer));
+        for k in files {
+            let file = self.files[*k].name.clone();
+            if complete {
+                let text = format!(
+                    "LEFT OUT: nothing says which layer `{file}` is, and every conductor layer has copper without it"
+                );
+                self.warn(*k, text);
+            } else {
+                self.fail(*k, Problem::UnknownRole { file });
+            }
         }
     }
 
@@ -549,6 +581,7 @@ impl Stage<'_> {
             path: hit.path.clone(),
             diameter: hit.diameter,
             contours: None,
+            grown: 0.0,
             plated: hit.plated,
             origin: Origin::new(id, hit.span),
         };
@@ -608,9 +641,9 @@ impl Stage<'_> {
         }))
     }
 
-    /// Share of the first 200 holes whose edge lies on copper.
+    /// Share of the first 60 holes whose edge lies on copper.
     fn share_on_copper(&self, read: &DrillFile, bounds: &Bounds) -> f64 {
-        let some: Vec<&drill::Hit> = read.hits.iter().take(200).collect();
+        let some: Vec<&drill::Hit> = read.hits.iter().take(60).collect();
         let on = some.iter().filter(|hit| {
             let at = round(hit.path[0]);
             // A little outside the hole, since some writers leave its inside free of copper.
@@ -622,7 +655,7 @@ impl Stage<'_> {
                         || c.region.contains(Point::new(at.x, at.y + reach))
                 })
         });
-        #[expect(clippy::cast_precision_loss, reason = "at most 200")]
+        #[expect(clippy::cast_precision_loss, reason = "at most 60")]
         {
             on.count() as f64 / some.len().max(1) as f64
         }
@@ -648,7 +681,14 @@ impl Stage<'_> {
                 }
             };
             let origin = Origin::new(id, object.span);
-            holes.push(RawHole { path, diameter: diameter * step, contours, plated: None, origin });
+            holes.push(RawHole {
+                path,
+                diameter: diameter * step,
+                contours,
+                grown: 0.0,
+                plated: None,
+                origin,
+            });
         }
         holes
     }
@@ -680,6 +720,8 @@ struct RawHole {
     path: Vec<Xy>,
     diameter: f64,
     contours: Option<Vec<crate::geom::Contour>>,
+    /// By how much it is wider than `contours`, m.
+    grown: f64,
     plated: Option<bool>,
     origin: Origin,
 }
@@ -687,14 +729,24 @@ struct RawHole {
 impl RawHole {
     fn widen(&mut self, by: f64) {
         self.diameter += by;
+        self.grown += by;
     }
 
     /// Its outline; `None` for a tool of no size.
     fn region(&self, options: &ArtworkOptions) -> Option<Region> {
-        if let Some(contours) = &self.contours {
-            return Some(Region::from_contours(contours, Fill::NonZero));
-        }
         let step = options.grid.step();
+        if let Some(contours) = &self.contours {
+            let drawn = Region::from_contours(contours, Fill::NonZero);
+            if self.grown / step < 2.0 {
+                return Some(drawn);
+            }
+            let pen = Pen::new(self.grown / 2.0 / step, options.chord_error / step);
+            #[expect(clippy::cast_precision_loss, reason = "coordinates are far below 2^53 steps")]
+            let xy = |p: &Point| -> Xy { [p.x as f64, p.y as f64] };
+            let rim = contours.iter().flat_map(|ring| ring.iter().zip(ring.iter().cycle().skip(1)));
+            let rim: Vec<_> = rim.map(|(a, b)| snap(&pen.stroke(xy(a), xy(b)))).collect();
+            return Some(drawn.union(&Region::from_contours(&rim, Fill::NonZero)));
+        }
         if self.diameter / step < 1.0 {
             return None;
         }

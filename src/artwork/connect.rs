@@ -5,6 +5,8 @@
 
 use super::contact::{Part, contacts};
 use super::error::{ArtworkError, Problem};
+use super::layer_role::conductor;
+use super::netlist::TestPoint;
 use super::{Artwork, ArtworkOptions, Copper, Hole, Lining, Pattern};
 use crate::diag::{Origin, Warning};
 use crate::geom::region::{Grid, Point, Region};
@@ -44,6 +46,8 @@ pub(super) struct Draft {
     pub(super) patterns: Vec<Pattern>,
     pub(super) openings: Vec<Pattern>,
     pub(super) profile: Option<Region>,
+    /// Names from a netlist.
+    pub(super) names: Vec<(Origin, TestPoint)>,
 }
 
 /// One connected thing: all metal of a name, one island without a name, or one plated hole.
@@ -119,8 +123,8 @@ pub(super) fn connect(
 ) -> Result<Artwork, Vec<ArtworkError>> {
     let ArtworkOptions { grid, chord_error } = *options;
     let mut errors = Vec::new();
-    settle_plating(&mut draft, warnings);
-    drill_out(&mut draft, stackup, warnings);
+    settle_plating(&mut draft, stackup, warnings);
+    drill_out(&mut draft, warnings);
     let mut nodes = Nodes { nodes: Vec::new(), parent: Vec::new() };
     let mut metal = gather(draft.copper, &mut nodes);
     let n_copper_nodes = nodes.nodes.len();
@@ -135,6 +139,7 @@ pub(super) fn connect(
     for (layer, _) in stackup.iter() {
         layers.join(layer, stackup, grid, (&mut nodes, &mut seen, &mut errors));
     }
+    name_by_netlist(&draft.names, stackup, grid, &metal, (&mut nodes, warnings, &mut errors));
     if !errors.is_empty() {
         return Err(errors);
     }
@@ -162,34 +167,45 @@ pub(super) fn connect(
 }
 
 /// Holes of which nobody says whether they are plated: plated where they meet copper, bare elsewhere.
-fn settle_plating(draft: &mut Draft, warnings: &mut Vec<Warning>) {
-    let copper = &draft.copper;
-    let (mut plated, mut bare, mut origin) = (0, 0, None);
-    for hole in draft.holes.iter_mut().filter(|hole| hole.plated.is_none()) {
-        let Some(bounds) = hole.region.bounds() else { continue };
-        let meets = copper.iter().any(|c| {
-            (hole.from..=hole.to).contains(&c.layer)
-                && c.region.bounds().is_some_and(|b| b.meets(&bounds))
-                && !c.region.intersection(&hole.region).is_empty()
-        });
-        hole.plated = Some(meets);
-        if meets {
-            plated += 1
-        } else {
-            bare += 1
-        }
-        origin.get_or_insert(hole.origin);
-    }
-    if let Some(origin) = origin {
-        let text = format!(
-            "whether holes are plated is not said: the {plated} that meet copper are taken as plated, the {bare} others as bare; `plated = true` or `false` in the job settles it"
+fn settle_plating(draft: &mut Draft, stackup: &Stackup, warnings: &mut Vec<Warning>) {
+    let unsaid: Vec<usize> = (0..draft.holes.len()).filter(|k| draft.holes[*k].plated.is_none()).collect();
+    let Some(first) = unsaid.first() else { return };
+    let origin = draft.holes[*first].origin;
+    let mut meets = vec![false; draft.holes.len()];
+    for layer in stackup.conductors() {
+        let here = unsaid.iter().filter(|k| (draft.holes[**k].from..=draft.holes[**k].to).contains(&layer));
+        let here: Vec<usize> = here.copied().collect();
+        // Copper is one node and each hole another, so that only copper against holes is looked at.
+        let mut parts: Vec<Part<'_>> =
+            here.iter().zip(1u32..).map(|(k, node)| Part { node, region: &draft.holes[*k].region }).collect();
+        let copper = draft.copper.iter().filter(|copper| copper.layer == layer);
+        parts.extend(copper.map(|copper| Part { node: 0, region: &copper.region }));
+        let found = std::cell::RefCell::new(&mut meets);
+        contacts(
+            &parts,
+            |a, b| here.get(a.min(b)).is_none_or(|k| found.borrow()[*k]),
+            |a, b, _| {
+                if a.max(b) >= here.len()
+                    && let Some(k) = here.get(a.min(b))
+                {
+                    found.borrow_mut()[*k] = true;
+                }
+            },
         );
-        warnings.push(Warning::new(text, origin));
     }
+    let plated = unsaid.iter().filter(|k| meets[**k]).count();
+    for k in &unsaid {
+        draft.holes[*k].plated = Some(meets[*k]);
+    }
+    let text = format!(
+        "whether holes are plated is not said: the {plated} that meet copper are taken as plated, the {} others as bare; `plated = true` or `false` in the job settles it",
+        unsaid.len() - plated
+    );
+    warnings.push(Warning::new(text, origin));
 }
 
 /// Copper inside bare holes is gone.
-fn drill_out(draft: &mut Draft, stackup: &Stackup, warnings: &mut Vec<Warning>) {
+fn drill_out(draft: &mut Draft, warnings: &mut Vec<Warning>) {
     let bare: Vec<&DraftHole> = draft.holes.iter().filter(|hole| hole.plated == Some(false)).collect();
     let Some(first) = bare.first() else { return };
     let mut cut = 0;
@@ -208,10 +224,7 @@ fn drill_out(draft: &mut Draft, stackup: &Stackup, warnings: &mut Vec<Warning>) 
         }
     }
     if cut > 0 {
-        let text = format!(
-            "copper inside unplated holes is removed ({cut} layer and net pairs of {} layers)",
-            stackup.layers.len()
-        );
+        let text = format!("copper inside unplated holes is removed ({cut} pairs of a layer and a name)");
         warnings.push(Warning::new(text, first.origin));
     }
 }
@@ -304,6 +317,77 @@ fn label(
                 },
             ));
         }
+    }
+}
+
+/// Gives the names of a netlist to copper that has none. Two of its names on one piece are a short; a name other than
+/// the copper's own is told.
+fn name_by_netlist(
+    names: &[(Origin, TestPoint)],
+    stackup: &Stackup,
+    grid: Grid,
+    metal: &[Metal],
+    (nodes, warnings, errors): (&mut Nodes, &mut Vec<Warning>, &mut Vec<ArtworkError>),
+) {
+    let mut given: BTreeSet<String> = BTreeSet::new();
+    let mut known: BTreeMap<String, usize> = BTreeMap::new();
+    for k in 0..nodes.nodes.len() {
+        if let Some(name) = nodes.nodes[k].name.clone() {
+            known.entry(name).or_insert(k);
+        }
+    }
+    let (mut misses, mut differ) = (0, Vec::new());
+    for (origin, point) in names {
+        let layers: Vec<LayerId> = match point.layer {
+            Some(number) => conductor(stackup, number).into_iter().collect(),
+            None => stackup.conductors().collect(),
+        };
+        let hit = metal.iter().find(|m| layers.contains(&m.layer) && m.region.contains(point.at));
+        let Some(hit) = hit else {
+            misses += 1;
+            continue;
+        };
+        let root = nodes.root(hit.node);
+        match nodes.nodes[root].name.clone() {
+            Some(name) if name == point.net => {}
+            Some(name) if given.contains(&name) => errors.push(ArtworkError::at(
+                *origin,
+                Problem::Short {
+                    a: name,
+                    b: point.net.clone(),
+                    layer: stackup.get(hit.layer).name.clone(),
+                    at_mm: [grid.length(point.at.x) * 1e3, grid.length(point.at.y) * 1e3],
+                    span: origin.span,
+                },
+            )),
+            Some(name) => differ.push(format!("`{name}` is `{}`", point.net)),
+            None => {
+                given.insert(point.net.clone());
+                match known.get(&point.net) {
+                    Some(node) => {
+                        let named = nodes.root(*node);
+                        nodes.parent[root] = named;
+                    }
+                    None => {
+                        nodes.nodes[root].name = Some(point.net.clone());
+                        known.insert(point.net.clone(), root);
+                    }
+                }
+            }
+        }
+    }
+    let origin = names.first().map_or_else(Origin::default, |(origin, _)| *origin);
+    if misses > 0 {
+        warnings.push(Warning::new(format!("{misses} points of the netlist hit no copper"), origin));
+    }
+    if !differ.is_empty() {
+        differ.sort();
+        differ.dedup();
+        let text = format!(
+            "the netlist disagrees with the names in the artwork, which are kept: {}",
+            differ.join(", ")
+        );
+        warnings.push(Warning::new(text, origin));
     }
 }
 

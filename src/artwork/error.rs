@@ -239,6 +239,18 @@ pub enum Problem {
         #[label("named here")]
         span: Span,
     },
+    /// A line of the netlist breaks its format.
+    #[error("the netlist `{file}` has a line that is malformed: expected {expected}")]
+    #[diagnostic(code(artwork::netlist), help("export it as IPC-D-356A again, or leave it out"))]
+    Netlist {
+        /// The file.
+        file: String,
+        /// What should stand there.
+        expected: &'static str,
+        /// The line.
+        #[label("this line")]
+        span: Span,
+    },
     /// The job file cannot be read.
     #[error("`{file}` is not a Gerber job file: {reason}")]
     #[diagnostic(

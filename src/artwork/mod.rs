@@ -12,6 +12,7 @@ pub mod error;
 pub mod gerber;
 mod job_file;
 mod layer_role;
+mod netlist;
 mod profile;
 mod shape;
 

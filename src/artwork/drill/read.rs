@@ -357,6 +357,9 @@ impl Reader {
             let value: f64 = number.parse().map_err(|_| bad())?;
             return Ok(value * unit);
         }
+        if number.bytes().all(|b| matches!(b, b'0' | b'+' | b'-')) && number.contains('0') {
+            return Ok(0.0);
+        }
         let digits = match self.header.digits() {
             Some(digits) => digits,
             None => {

@@ -216,6 +216,10 @@ fn primitive(code: u32, v: &[f64], span: Span, unit: f64, chord_error: f64) -> R
     if v.iter().any(|x| !x.is_finite() || x.abs() > 1e4) {
         return Err(GerberError::OutOfRange { what: "a macro parameter", span });
     }
+    let exposed = matches!(code, 6 | 7) || (v[0] - 1.0).abs() < 1e-9;
+    if !exposed && v[0].abs() > 1e-9 {
+        return Err(malformed("an exposure of 0 or 1"));
+    }
     let rotation = |k: usize| v.get(k).copied().unwrap_or(0.0).to_radians();
     let s = |k: usize| v[k] * unit;
     let turned = |points: Vec<Xy>, angle: f64| vec![positive(snap(&turn(points, angle)))];
@@ -228,7 +232,7 @@ fn primitive(code: u32, v: &[f64], span: Span, unit: f64, chord_error: f64) -> R
             let (dx, dy) = (s(4) - s(2), s(5) - s(3));
             let length = dx.hypot(dy);
             if length <= 0.0 {
-                return Ok(Drawn { exposed: v[0] > 0.5, contours: Vec::new() });
+                return Ok(Drawn { exposed, contours: Vec::new() });
             }
             let (nx, ny) = (-dy / length * s(1) / 2.0, dx / length * s(1) / 2.0);
             let corners = vec![
@@ -271,7 +275,7 @@ fn primitive(code: u32, v: &[f64], span: Span, unit: f64, chord_error: f64) -> R
         6 => moire(v, unit, chord_error, rotation(8), span)?,
         _ => thermal(v, unit, chord_error, rotation(5)),
     };
-    Ok(Drawn { exposed: matches!(code, 6 | 7) || v[0] > 0.5, contours })
+    Ok(Drawn { exposed, contours })
 }
 
 /// Primitive 6: rings and a cross.

@@ -14,9 +14,9 @@ use std::collections::HashMap;
 use std::sync::Arc as Shared;
 
 /// Most objects one file may make.
-const MAX_OBJECTS: u64 = 2_000_000;
+const MAX_OBJECTS: u64 = 1_000_000;
 /// Most corners the objects of one file may have together.
-const MAX_POINTS: u64 = 30_000_000;
+const MAX_POINTS: u64 = 12_000_000;
 /// Most errors reported for one file.
 const MAX_ERRORS: usize = 20;
 
@@ -54,8 +54,7 @@ pub(crate) fn plot(bytes: &[u8], grid: Grid, chord_error: f64) -> Result<Plot, V
         let more = commands.read(&mut found);
         for (command, span) in found.drain(..) {
             if let Err(error) = plotter.run(command, span) {
-                // What the first problem of a kind breaks repeats on every line; once is enough.
-                if !errors.iter().any(|e| std::mem::discriminant(e) == std::mem::discriminant(&error)) {
+                if !errors.iter().any(|known| repeats(known, &error)) {
                     errors.push(error);
                 }
             }
@@ -80,6 +79,20 @@ pub(crate) fn plot(bytes: &[u8], grid: Grid, chord_error: f64) -> Result<Plot, V
         }
     }
     if errors.is_empty() { plotter.finish(bytes.len()).map_err(|e| vec![e]) } else { Err(errors) }
+}
+
+/// Whether an error says nothing new: what the first problem of a kind breaks repeats on every line.
+fn repeats(known: &GerberError, new: &GerberError) -> bool {
+    match (known, new) {
+        (GerberError::UndefinedAperture { code: a, .. }, GerberError::UndefinedAperture { code: b, .. }) => {
+            a == b
+        }
+        (GerberError::UndefinedMacro { name: a, .. }, GerberError::UndefinedMacro { name: b, .. }) => a == b,
+        (GerberError::Unsupported { construct: a, .. }, GerberError::Unsupported { construct: b, .. }) => {
+            a == b
+        }
+        _ => std::mem::discriminant(known) == std::mem::discriminant(new),
+    }
 }
 
 /// Where objects go: the file, an open step-repeat, an open block aperture.
@@ -127,6 +140,7 @@ struct Plotter {
     n_objects: u64,
     n_points: u64,
     ended: bool,
+    warned_arc: bool,
 }
 
 /// The deprecated transformations of a whole image: on coordinates first, then a rotation of everything.
@@ -173,6 +187,7 @@ impl Plotter {
             n_objects: 0,
             n_points: 0,
             ended: false,
+            warned_arc: false,
         }
     }
 
@@ -204,9 +219,15 @@ impl Plotter {
             Command::Operation { coords, kind } => self.operate(&coords, kind, span)?,
             Command::Define { code, shape } => {
                 let unit = self.unit_steps(span)?;
-                let built = aperture::build(&shape, &self.macros, unit, (self.grid, self.chord_error), span)?;
-                self.apertures.insert(code, built);
                 self.pen = None;
+                match aperture::build(&shape, &self.macros, unit, (self.grid, self.chord_error), span) {
+                    Ok(built) => drop(self.apertures.insert(code, built)),
+                    Err(error) => {
+                        // Its uses are no problems of their own.
+                        self.apertures.insert(code, Aperture::Block(Shared::default()));
+                        return Err(error);
+                    }
+                }
             }
             Command::Macro(found) => {
                 self.macros.insert(found.name.clone(), *found);
@@ -241,7 +262,7 @@ impl Plotter {
                 self.image.scale = factor;
             }
             Command::ImageRotate(degrees) => self.image.rotation = degrees,
-            Command::Attribute(attribute) => self.attribute(*attribute),
+            Command::Attribute(attribute) => self.attribute(*attribute, span),
             Command::Nothing => {}
             Command::End => self.ended = true,
         }
@@ -436,6 +457,14 @@ impl Plotter {
         let read = |digits: Option<Digits>, axis| digits.map_or(Ok(0.0), |d| self.length(d, axis, span));
         let (i, j) =
             (read(coords.i, format.x)? * self.image.scale, read(coords.j, format.y)? * self.image.scale);
+        if coords.i.is_none() && coords.j.is_none() && round(self.at) != round(to) {
+            if !std::mem::replace(&mut self.warned_arc, true) {
+                let text =
+                    "an arc without `I` and `J` is drawn straight (the file does not go back to `G01`)";
+                self.plot.warnings.push((text.to_owned(), span));
+            }
+            return Ok(None);
+        }
         let mut counter = self.interpolation == InterpolationMode::CounterclockwiseCircular;
         if self.image.mirror_x != self.image.mirror_y {
             counter = !counter;
@@ -480,11 +509,10 @@ impl Plotter {
     }
 
     fn select(&mut self, code: u32, span: Span) -> Result<(), GerberError> {
+        self.selected = Some(code);
         if !self.apertures.contains_key(&code) {
-            self.selected = None;
             return Err(GerberError::UndefinedAperture { code, span });
         }
-        self.selected = Some(code);
         Ok(())
     }
 
@@ -632,9 +660,16 @@ impl Plotter {
         Ok(())
     }
 
-    fn attribute(&mut self, attribute: Attribute) {
+    fn attribute(&mut self, attribute: Attribute, span: Span) {
         match attribute {
             Attribute::Set { target: Target::Object, name, values } if name == ".N" => {
+                if values.len() > 1 {
+                    let text = format!(
+                        "an object belongs to several nets ({}); it is given to the first",
+                        values.join(", ")
+                    );
+                    self.plot.warnings.push((text, span));
+                }
                 let name = values.first().map(|n| n.trim()).unwrap_or_default();
                 let name = if name == "N/C" { "" } else { name };
                 self.net = match self.name_index.get(name) {

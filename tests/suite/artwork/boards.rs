@@ -8,7 +8,7 @@ use serde_json::Value;
 use std::path::PathBuf;
 
 /// The shared boards; `None`, said aloud, where they are not at hand.
-fn shared() -> Option<PathBuf> {
+pub(super) fn shared() -> Option<PathBuf> {
     let folder = PathBuf::from(env!("CARGO_MANIFEST_DIR")).join("../shared/boards");
     if folder.is_dir() {
         return Some(folder);

@@ -7,5 +7,11 @@
     reason = "a test that cannot read its input or is skipped must say so; the boards are files"
 )]
 
+mod bad_input;
 mod boards;
+mod drills;
+mod mutation;
+mod nets;
+mod spec_examples;
+mod transforms;
 mod world;
