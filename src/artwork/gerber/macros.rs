@@ -245,24 +245,8 @@ fn primitive(code: u32, v: &[f64], span: Span, unit: f64, chord_error: f64) -> R
         }
         21 => turned(rectangle([s(3) - s(1) / 2.0, s(4) - s(2) / 2.0], s(1), s(2)), rotation(5)),
         22 => turned(rectangle([s(3), s(4)], s(1), s(2)), rotation(5)),
-        4 => {
-            let count = v[1];
-            if !(1.0..=MAX_CORNERS).contains(&count) {
-                return Err(malformed("1 to 100000 corners"));
-            }
-            #[expect(
-                clippy::cast_possible_truncation,
-                clippy::cast_sign_loss,
-                reason = "in range, just checked"
-            )]
-            let n = count.round() as usize;
-            if v.len() < 2 + 2 * (n + 1) {
-                return Err(malformed("as many corners as it counts, and the first again"));
-            }
-            let corners = (0..=n).map(|k| [s(2 + 2 * k), s(3 + 2 * k)]).collect();
-            let ring = snap(&turn(corners, rotation(4 + 2 * n)));
-            Region::from_contours(&[ring], Fill::NonZero).contours().cloned().collect()
-        }
+        4 => outline(v, unit)
+            .ok_or_else(|| malformed("1 to 100000 corners, the first again, and a rotation"))?,
         5 => {
             let n = v[1].round();
             if !(3.0..=12.0).contains(&n) {
@@ -276,6 +260,20 @@ fn primitive(code: u32, v: &[f64], span: Span, unit: f64, chord_error: f64) -> R
         _ => thermal(v, unit, chord_error, rotation(5)),
     };
     Ok(Drawn { exposed, contours })
+}
+
+/// Primitive 4: a closed outline; `None` when its corners are not what it counts.
+fn outline(v: &[f64], unit: f64) -> Option<Vec<Contour>> {
+    if !(1.0..=MAX_CORNERS).contains(&v[1]) {
+        return None;
+    }
+    #[expect(clippy::cast_possible_truncation, clippy::cast_sign_loss, reason = "in range, just checked")]
+    let n = v[1].round() as usize;
+    let corners = v.get(2..2 + 2 * (n + 1))?;
+    let corners = corners.chunks_exact(2).map(|c| [c[0] * unit, c[1] * unit]).collect();
+    let angle = v.get(4 + 2 * n).copied().unwrap_or(0.0).to_radians();
+    let ring = snap(&turn(corners, angle));
+    Some(Region::from_contours(&[ring], Fill::NonZero).contours().cloned().collect())
 }
 
 /// Primitive 6: rings and a cross.

@@ -53,10 +53,10 @@ pub(crate) fn plot(bytes: &[u8], grid: Grid, chord_error: f64) -> Result<Plot, V
         found.clear();
         let more = commands.read(&mut found);
         for (command, span) in found.drain(..) {
-            if let Err(error) = plotter.run(command, span) {
-                if !errors.iter().any(|known| repeats(known, &error)) {
-                    errors.push(error);
-                }
+            if let Err(error) = plotter.run(command, span)
+                && !errors.iter().any(|known| repeats(known, &error))
+            {
+                errors.push(error);
             }
             if plotter.ended {
                 break;
