@@ -1,10 +1,11 @@
 //! A convex polygon with many corners, as a row of triangles and quadrilaterals.
 //!
 //! Of all strip decompositions (each piece shares a side with the next) the cheapest is found by dynamic programming
-//! over the chords, in O(n²); the cost of a piece is one plus half of its perimeter² / 16 area, so that few and fat
-//! pieces win and the straight part of a round-ended trace stays whole.
+//! over the chords, in O(n²). The cost of a piece is one plus its perimeter² / 8 area, which is 2 for a square, weighted
+//! by its share of the polygon's perimeter: few and fat pieces win, and a sliver matters by its size, so that the
+//! straight part of a round-ended trace stays whole.
 
-use crate::mesh::outline::{Corner, P2, area_of};
+use crate::mesh::outline::{Corner, area_of};
 
 /// Above this many corners a polygon is halved first.
 const MOST: usize = 256;
@@ -26,9 +27,15 @@ pub(super) fn strips(corners: &[Corner]) -> Vec<Vec<Corner>> {
     table.pieces(start)
 }
 
+fn perimeter_of(ring: &[Corner]) -> f64 {
+    let next = ring.iter().cycle().skip(1);
+    ring.iter().zip(next).map(|(p, q)| (q.at - p.at).norm()).sum()
+}
+
 /// Best cost and choice for the part of the polygon cut off by the chord from corner i to corner i + len.
 struct Table<'a> {
     corners: &'a [Corner],
+    perimeter: f64,
     best: Vec<(f64, Choice)>,
 }
 
@@ -48,7 +55,8 @@ enum Choice {
 impl Table<'_> {
     fn fill(corners: &[Corner]) -> Table<'_> {
         let n = corners.len();
-        let mut table = Table { corners, best: vec![(0.0, Choice::Edge); n * n] };
+        let mut table =
+            Table { corners, perimeter: perimeter_of(corners), best: vec![(0.0, Choice::Edge); n * n] };
         for len in 2..n {
             for i in 0..n {
                 let (j, i1, j1) = (i + len, i + 1, i + len - 1);
@@ -83,13 +91,9 @@ impl Table<'_> {
             *to = self.corner(*from);
         }
         let ring = &ring[..piece.len()];
-        let perimeter: f64 = (0..ring.len())
-            .map(|k| {
-                let edge: P2 = ring[(k + 1) % ring.len()].at - ring[k].at;
-                edge.norm()
-            })
-            .sum();
-        1.0 + perimeter * perimeter / (32.0 * area_of(ring).max(f64::MIN_POSITIVE))
+        let perimeter = perimeter_of(ring);
+        let shape = perimeter * perimeter / (8.0 * area_of(ring).max(f64::MIN_POSITIVE));
+        1.0 + shape * perimeter / self.perimeter
     }
 
     fn pieces(&self, start: usize) -> Vec<Vec<Corner>> {

@@ -198,6 +198,14 @@ impl Web {
         best
     }
 
+    /// At least 1: how much dearer a cut is for the sharp corner that it leaves between the direction `d` and an
+    /// edge at `k`.
+    fn sharpness(&self, k: usize, d: P2) -> f64 {
+        let (a, b) = self.edges(k);
+        let worth = |e: P2| if e.dot(&d) <= 0.0 { 1.0 } else { cross(e, d).abs() / (e.norm() * d.norm()) };
+        1.0 / worth(b).min(worth(-a)).max(0.1)
+    }
+
     /// The cut along a ray: to the corner that it meets, or to the edge.
     fn judge(&self, k: usize, hit: &Hit, factor: f64) -> Option<Cut> {
         let next = self.nodes[hit.edge].next;
@@ -206,12 +214,15 @@ impl Web {
         for (end, gap) in ends {
             if gap <= SNAP * self.extent {
                 let back = self.at(k) - self.at(end);
-                let score = hit.distance * if self.settles_too(end, back) { BOTH } else { factor };
+                let factor = if self.settles_too(end, back) { BOTH } else { factor };
+                let score = hit.distance * factor * self.sharpness(k, -back).max(self.sharpness(end, back));
                 return self.points_inside(end, back).then_some(Cut { score, target: Target::Corner(end) });
             }
         }
         let near = ends.iter().any(|(_, gap)| *gap < 0.15 * hit.distance);
-        let score = hit.distance * factor * if near { 1.6 } else { 1.0 };
+        let (d, f) = (hit.direction, (self.at(next) - self.at(hit.edge)) / length);
+        let sharp = self.sharpness(k, d).max(1.0 / cross(d, f).abs().max(0.1));
+        let score = hit.distance * factor * sharp * if near { 1.6 } else { 1.0 };
         Some(Cut { score, target: Target::Edge(hit.edge, hit.fraction) })
     }
 
@@ -239,7 +250,8 @@ impl Web {
                     return None;
                 }
                 let factor = if self.settles_too(target, -d) { BOTH } else { 0.9 };
-                Some((distance * factor, target))
+                let sharp = self.sharpness(k, d).max(self.sharpness(target, -d));
+                Some((distance * factor * sharp, target))
             })
             .collect()
     }
@@ -287,7 +299,7 @@ impl Web {
                 return;
             }
             if best.is_none_or(|b| distance < b.distance) {
-                best = Some(Hit { edge, fraction, distance });
+                best = Some(Hit { edge, fraction, distance, direction: d });
             }
         });
         best
@@ -348,6 +360,7 @@ struct Hit {
     edge: usize,
     fraction: f64,
     distance: f64,
+    direction: P2,
 }
 
 /// The ring without corners nearer than `tolerance` to the chord of their neighbours.

@@ -1,11 +1,12 @@
 //! The size function: how many panels a line across a face must be cut into.
 //!
 //! Near a graded edge the k-th of n cuts lies at L (k/n)^b, so a stretch of line takes as many panels as
-//! s(x) = n (x/L)^(1/b) grows along it; beyond L panels grow in proportion to x. Only distance counts that is gained
+//! s(x) = n (x/L)^(1/b) grows along it; beyond L panels grow in proportion to x, and beyond X to x². Only distance counts that is gained
 //! square to the edge: along it panels may be long. See `docs/formulation.md`, "Grading".
 
 use crate::faces::{EdgeGrade, Face, FaceKind};
 use crate::geom::Vec3;
+use crate::mesh::edge_tree::EdgeTree;
 use crate::net::NetId;
 use std::collections::BTreeMap;
 
@@ -13,10 +14,10 @@ use std::collections::BTreeMap;
 #[derive(Debug)]
 pub(super) struct Density {
     edges: Vec<GradedEdge>,
-    /// First own edge of each face, and one past the last.
-    own: Vec<[u32; 2]>,
+    /// The edges of each face.
+    own: Vec<EdgeTree>,
     /// Conductor edges, each once, that other nets and interfaces must heed.
-    foreign: Vec<u32>,
+    foreign: EdgeTree,
     nets: Vec<Option<NetId>>,
     n: f64,
 }
@@ -29,6 +30,8 @@ struct GradedEdge {
     length: f64,
     /// L: within this distance the power law holds, m.
     feature: f64,
+    /// X: beyond this distance the edge looks short and its bearing fades, m.
+    fades: f64,
     /// b.
     power: f64,
     face: u32,
@@ -45,7 +48,7 @@ pub(super) struct Nearby {
 /// Points at which a line is probed, less one.
 const STEPS: usize = 8;
 /// Edges that ask for less than this many panels across a panel are left out for its parts.
-const NEGLIGIBLE: f64 = 0.1;
+const NEGLIGIBLE: f64 = 0.4;
 
 /// What a line across a panel asks for.
 #[derive(Debug, Clone, Copy)]
@@ -60,28 +63,39 @@ impl Density {
     /// Edges of `faces` at density `n`.
     pub(super) fn new(faces: &[Face], n: f64) -> Density {
         let mut edges = Vec::new();
-        let mut own = Vec::with_capacity(faces.len());
+        let mut ranges = Vec::with_capacity(faces.len());
         for (face, id) in faces.iter().zip(0u32..) {
             let first = index(edges.len());
             edges.extend(graded_edges(face, id));
-            own.push([first, index(edges.len())]);
+            ranges.push(first..index(edges.len()));
         }
         let foreign = share_features(&mut edges);
+        let tree = |numbers: Vec<u32>| {
+            let ends = |k: u32| {
+                let edge = &edges[k as usize];
+                (k, edge.start, edge.start + edge.length * edge.along)
+            };
+            EdgeTree::new(numbers.into_iter().map(ends).collect())
+        };
+        let own = ranges.into_iter().map(|range| tree(range.collect())).collect();
+        let foreign = tree(foreign);
         let nets = faces.iter().map(net_of).collect();
         Density { edges, own, foreign, nets, n }
     }
 
     /// Edges that bear on a panel of `face` inside the sphere.
     pub(super) fn nearby(&self, face: u32, centre: Vec3, radius: f64) -> Nearby {
-        let [first, end] = self.own[face as usize];
-        let all = Nearby { own: (first..end).collect(), foreign: self.foreign_of(face) };
-        self.narrow(&all, centre, radius)
-    }
-
-    fn foreign_of(&self, face: u32) -> Vec<u32> {
+        // Beyond this distance no edge asks for more than a negligible part, whatever its power (3 or more).
+        let reach = radius * (1.0 + 2.0 * self.n / (3.0 * NEGLIGIBLE));
         let net = self.nets[face as usize];
-        let heeds = |edge: &GradedEdge| edge.face != face && (net.is_none() || edge.net != net);
-        self.foreign.iter().copied().filter(|k| heeds(&self.edges[*k as usize])).collect()
+        let heeds = |k: &u32| {
+            let edge = &self.edges[*k as usize];
+            edge.face != face && (net.is_none() || edge.net != net)
+        };
+        Nearby {
+            own: self.own[face as usize].within(centre, reach),
+            foreign: self.foreign.within(centre, reach).into_iter().filter(heeds).collect(),
+        }
     }
 
     /// Those of `nearby` that bear on a part inside the sphere.
@@ -91,15 +105,22 @@ impl Density {
             let distance = edge.distance(centre);
             (edge, (distance - radius).max(0.0), distance + radius)
         };
-        let own = nearby.own.iter().copied().filter(|k| {
-            let (edge, lo, hi) = far(*k);
-            edge.cells(hi, self.n) - edge.cells(lo, self.n) > NEGLIGIBLE
-        });
+        let mut own: Vec<(f64, u32)> = Vec::with_capacity(nearby.own.len());
+        for &k in &nearby.own {
+            let (edge, lo, hi) = far(k);
+            if edge.most(lo, hi, self.n) > NEGLIGIBLE
+                && edge.cells(hi, self.n) - edge.cells(lo, self.n) > NEGLIGIBLE
+            {
+                own.push((lo + hi, k));
+            }
+        }
+        // The nearest first, since what asks for most rules the others out cheaply.
+        own.sort_unstable_by(|p, q| p.0.total_cmp(&q.0).then(p.1.cmp(&q.1)));
         let foreign = nearby.foreign.iter().copied().filter(|k| {
             let (edge, lo, _) = far(*k);
-            2.0 * radius * self.n > NEGLIGIBLE * edge.power * lo
+            edge.most(lo, lo + 2.0 * radius, self.n) > NEGLIGIBLE
         });
-        Nearby { own: own.collect(), foreign: foreign.collect() }
+        Nearby { own: own.into_iter().map(|(_, k)| k).collect(), foreign: foreign.collect() }
     }
 
     /// What the line from `from` to `to`, on a panel of `face`, asks for.
@@ -112,6 +133,10 @@ impl Density {
             let mut near = distance(0);
             for i in 0..STEPS {
                 let far = distance(i + 1);
+                if edge.most(near.min(far), near.max(far), self.n) <= steps[i] {
+                    near = far;
+                    continue;
+                }
                 let asked = (edge.cells(far, self.n) - edge.cells(near, self.n)).abs();
                 if asked > steps[i] {
                     steps[i] = asked;
@@ -171,13 +196,29 @@ impl GradedEdge {
     /// s(x): panels from the edge to distance `x`.
     fn cells(&self, x: f64, n: f64) -> f64 {
         let ratio = x / self.feature;
-        n * if ratio <= 1.0 { ratio.powf(1.0 / self.power) } else { 1.0 + ratio.ln() / self.power }
+        if ratio <= 1.0 {
+            n * if self.power < 3.5 { ratio.cbrt() } else { ratio.sqrt().sqrt() }
+        } else if x <= self.fades {
+            n * (1.0 + ratio.ln() / self.power)
+        } else {
+            n * (1.0 + (self.fades / self.feature).ln() / self.power + (1.0 - self.fades / x) / self.power)
+        }
+    }
+
+    /// Bound on what [`Self::cells`] gains from distance `lo` to `hi`.
+    fn most(&self, lo: f64, hi: f64, n: f64) -> f64 {
+        n / self.power * (hi - lo) / lo * (self.fades / lo).min(1.0)
     }
 
     /// The inverse of [`Self::cells`].
     fn distance_at(&self, cells: f64, n: f64) -> f64 {
         let share = cells / n;
-        self.feature * if share <= 1.0 { share.powf(self.power) } else { ((share - 1.0) * self.power).exp() }
+        if share <= 1.0 {
+            return self.feature * share.powf(self.power);
+        }
+        let beyond = (share - 1.0) * self.power;
+        let tail = beyond - (self.fades / self.feature).ln();
+        if tail <= 0.0 { self.feature * beyond.exp() } else { self.fades / (1.0 - tail).max(f64::EPSILON) }
     }
 
     /// Panels that the steps of a line take which passes the edge at a distance. `at_full` ignores that an edge
@@ -197,7 +238,8 @@ impl GradedEdge {
         let nearest = self.start + on_edge * self.along;
         let s0 = (nearest - from).dot(&along);
         let gap = (nearest - from - s0 * along).norm().max(1e-9 * self.feature);
-        let weight = if at_full { 1.0 } else { (gap / self.feature).powf(1.0 / self.power).min(1.0) };
+        let near = if at_full { 1.0 } else { (gap / self.feature).powf(1.0 / self.power).min(1.0) };
+        let weight = near * (self.fades / gap).min(1.0);
         let upto = |i: usize| (sine * (fraction(i) * length - s0) / gap).asinh();
         let mut asked = [0.0; STEPS];
         let mut before = upto(0);
@@ -265,7 +307,8 @@ fn graded_edges(face: &Face, id: u32) -> Vec<GradedEdge> {
             }
         }
         let feature = (0.5 * width).min(2.0 * area / perimeter);
-        edges.push(GradedEdge { start, along, length, feature, power, face: id, net: net_of(face) });
+        let fades = length.max(2.0 * feature);
+        edges.push(GradedEdge { start, along, length, feature, fades, power, face: id, net: net_of(face) });
     }
     edges
 }
@@ -290,6 +333,7 @@ fn share_features(edges: &mut [GradedEdge]) -> Vec<u32> {
     for edge in edges.iter_mut() {
         if let Some((feature, _)) = shared.get(&key(edge)) {
             edge.feature = *feature;
+            edge.fades = edge.length.max(2.0 * feature);
         }
     }
     shared.values().map(|(_, k)| *k).collect()

@@ -8,6 +8,7 @@ mod convex;
 mod cuts;
 pub mod decompose;
 mod density;
+mod edge_tree;
 pub mod error;
 mod grade;
 mod outline;
