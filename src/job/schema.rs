@@ -473,7 +473,7 @@ mod tests {
     }
 
     /// What: the schemas know exactly the keys that the readers accept, table by table, and no further table has
-    /// keys. Seen to fail with: a key taken out of a list, a key added to a struct.
+    /// keys. Seen to fail with: a key taken out of a list.
     #[test]
     fn the_schemas_have_the_readers_keys() {
         let (job, stackup) = (read(SchemaKind::Job), read(SchemaKind::Stackup));

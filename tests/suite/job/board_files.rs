@@ -39,8 +39,8 @@ fn thicknesses(stackup: &Stackup) -> Vec<(&str, f64)> {
 }
 
 /// What: the stated thicknesses of real boards add up to the stated thickness of the board, 1.6 mm, masks included.
-/// Source: the files' own `BoardThickness`. Tolerance: n additions, n * EPSILON * sum. Seen to fail with: one copper
-/// layer dropped.
+/// Source: the files' own `BoardThickness`. Tolerance: n additions, n * EPSILON * sum. Seen to fail with: the last
+/// four entries dropped.
 #[test]
 fn real_boards_add_up() {
     for (path, n_layers) in [("ctrl4l/hardware-job.gbrjob", 9), ("arena6l/ni_arena_12-12-job.gbrjob", 13)] {

@@ -25,7 +25,7 @@ fn the_examples_are_read() {
     }
 }
 
-/// What: the page explains every key that the schemas know, as code in a table. Seen to fail with: a row removed.
+/// What: the page explains every key that the schemas know, as code in a table. Seen to fail with: a key that stands nowhere else misspelt.
 #[test]
 fn every_key_stands_on_the_page() {
     for which in [SchemaKind::Job, SchemaKind::Stackup] {
