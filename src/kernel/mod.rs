@@ -7,6 +7,7 @@
 pub mod flat;
 pub mod flux;
 pub mod galerkin;
+pub mod image;
 pub mod moment;
 pub mod outer;
 pub mod pair;

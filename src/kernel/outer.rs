@@ -19,11 +19,12 @@ pub struct Effort {
 }
 
 impl Effort {
-    /// ρ^(-2n) = 2e-6; for the potential, whose singularities at edges are weak (d ln d).
-    pub const POTENTIAL: Effort =
-        Effort { largest_q: [0.0028, 0.0753, 0.2276, 0.4034, 0.5799, 0.75], halvings: 6 };
-    /// ρ^(-2n) = 1e-7; for the solid angle, whose errors the row of a dense dielectric magnifies.
-    pub const FLUX: Effort = Effort { largest_q: [0.0006, 0.0356, 0.137, 0.271, 0.415, 0.56], halvings: 8 };
+    /// ρ^(-2n) of about 2e-6; for the potential, whose singularities at edges are weak (d ln d).
+    pub const POTENTIAL: Effort = Effort { largest_q: [0.0028, 0.06, 0.21, 0.38, 0.57, 0.75], halvings: 6 };
+    /// ρ^(-2n) of about 2e-6; for the solid angle, whose errors the row of a dense dielectric magnifies.
+    pub const FLUX: Effort = Effort { largest_q: [0.0015, 0.06, 0.2, 0.37, 0.56, 0.75], halvings: 7 };
+    /// ρ^(-2n) of about 1e-9; the measure for the other two.
+    pub const REFERENCE: Effort = Effort { largest_q: [1e-5, 0.005, 0.04, 0.12, 0.24, 0.37], halvings: 11 };
 }
 
 /// Mean over `outer` of `f`, a function of a point in the frame of `inner` (m) that is analytic but at its edges.
@@ -42,7 +43,7 @@ pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) ->
         tangents: inner.tangents.map(along),
         n,
         effort,
-        shortest: [0.5f64.powi(effort.halvings) * inner.radius.min(outer.radius); 2],
+        shortest: [0.5f64.powi(effort.halvings) * inner.area / (2.0 * inner.radius); 2],
         origin: inner.local(outer.centroid),
         columns: [inner.local(inner.centroid + outer.u), inner.local(inner.centroid + outer.v)],
         f,

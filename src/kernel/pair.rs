@@ -57,7 +57,7 @@ fn near_inverse(test: &Flat, source: &Flat) -> f64 {
 /// Returns V/m per C/m².
 ///
 /// # Accuracy
-/// Error at most 1e-6 of the largest entry at that distance; see [`regime`](mod@crate::kernel::regime).
+/// Error at most 4e-6 of the largest entry at that distance, 1 / (4 π ε₀ d²) times the area; see [`regime`](mod@crate::kernel::regime).
 #[must_use]
 #[inline]
 pub fn flux(test: &Flat, source: &Flat, shift: Vec3) -> f64 {

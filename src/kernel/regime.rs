@@ -27,11 +27,12 @@ pub struct Limits {
     far: f64,
 }
 
-/// Limits for the potential: relative error at most 1e-6.
-pub const POTENTIAL: Limits = Limits { fine: 0.09, coarse: 0.01, far: 0.002 };
+/// Limits for the potential: relative error at most 1e-6, measured over squares, triangles, trapezoids and rectangles
+/// of aspect 10, in size ratios up to 3 and all orientations (`oracles::regimes_meet_their_limits`).
+pub const POTENTIAL: Limits = Limits { fine: 0.04, coarse: 0.0015, far: 0.0006 };
 
-/// Limits for the flux: error at most 1e-6 of that of a face-to-face pair at the same distance.
-pub const FLUX: Limits = Limits { fine: 0.06, coarse: 0.006, far: 0.001 };
+/// Limits for the flux: error at most 4e-6 of A / (4 π ε₀ d²), which a face-to-face pair would have; over the same shapes.
+pub const FLUX: Limits = Limits { fine: 0.025, coarse: 0.001, far: 0.0004 };
 
 /// The regime of a pair whose centroids differ by `r`, m.
 #[must_use]

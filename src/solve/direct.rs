@@ -100,7 +100,9 @@ impl Factor {
         matmul(&mut defect, Accum::Add, &self.probed, solution, -1.0, Par::Seq);
         let relative = (0..right_sides.ncols()).map(|c| {
             let mean2 = (0..N_PROBES).map(|k| defect[(k, c)] * defect[(k, c)]).sum::<f64>() / N_PROBES as f64;
-            mean2.sqrt() / right_sides.col(c).norm_l2()
+            let size = right_sides.col(c).norm_l2();
+            // A net without panels has nothing on the right, and nothing to solve.
+            if size > 0.0 { mean2.sqrt() / size } else { mean2.sqrt() }
         });
         // A maximum that keeps what is not a number.
         let relative_residual = relative.fold(0.0, |a: f64, b| if a >= b { a } else { b });

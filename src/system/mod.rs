@@ -4,7 +4,6 @@
 //! threads.
 
 mod error;
-pub mod image;
 pub mod row;
 
 pub use error::SystemError;

@@ -4,9 +4,9 @@
 //! field over that panel. Storage and loops are elsewhere.
 
 use crate::geom::PanelShape;
+use crate::kernel::image::{Mirrors, Source};
 use crate::kernel::{EPS0, Flat};
 use crate::mesh::{Mesh, PanelId, PanelKind};
-use crate::system::image::{Mirrors, Source};
 use faer::MatRef;
 use rayon::prelude::{IntoParallelIterator, ParallelIterator};
 
@@ -51,7 +51,7 @@ impl Sources {
     /// The panels of `mesh`.
     #[must_use]
     pub fn new(mesh: &Mesh) -> Self {
-        let mirrors = Mirrors::of(&mesh.planes);
+        let mirrors = Mirrors::new(mesh.planes.below, mesh.planes.above);
         Sources { mirrors, sources: mesh.panels.iter().map(|panel| mirrors.source(&panel.shape)).collect() }
     }
 
@@ -81,14 +81,6 @@ impl Sources {
     #[inline]
     pub(crate) fn entry(&self, row: &Row, test: &Flat, k: usize) -> f64 {
         couple(&self.mirrors, row, test, &self.sources[k])
-    }
-
-    /// Mean normal field over `test`, principal value, due to all panels: one value per column of `density`, V/m.
-    ///
-    /// - `density`: `n_panels × n_columns`, C/m².
-    #[must_use]
-    pub fn normal_field(&self, test: &Flat, density: MatRef<'_, f64>) -> Vec<f64> {
-        self.act(&Row { own: 0.0, potential: 0.0, flux: 1.0 }, test, density)
     }
 
     fn act(&self, row: &Row, test: &Flat, density: MatRef<'_, f64>) -> Vec<f64> {

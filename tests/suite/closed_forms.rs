@@ -100,7 +100,6 @@ fn a_coated_sphere_has_its_capacitance_and_bound_charge() {
             _ => free += 4.4 * q,
         }
     }
-    println!("{} {}", free / EPS0 / 144.240_080_095_253_12e-3 - 1.0, bound / free / 0.772_727_272_727 - 1.0);
     assert!((free / EPS0 / 144.240_080_095_253_12e-3 - 1.0).abs() < 5e-3, "C = {} m eps0", free / EPS0);
     assert!((bound / free / 0.772_727_272_727 - 1.0).abs() < 5e-3, "bound over free: {}", bound / free);
 }

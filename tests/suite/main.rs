@@ -5,8 +5,10 @@
 
 mod artwork;
 mod closed_forms;
+mod identities;
 mod job;
 mod mesh;
+mod oracles;
 mod slab;
 mod solids;
 mod tidy;

@@ -5,7 +5,6 @@
 
 use crate::geom::{PanelShape, Vec3};
 use crate::kernel::{COULOMB, Flat, pair};
-use crate::slab::ImagePlanes;
 
 /// Images on each side that are summed one by one. The rest, by the Euler-Maclaurin formula with its first correction,
 /// errs by about (1/2) (1 / (2 n + 1))^6 / H: 1e-7 / H, below the error of the regimes.
@@ -30,10 +29,10 @@ pub enum Mirrors {
 }
 
 impl Mirrors {
-    /// The mirrors of `planes`.
+    /// Planes below and above everything that is charged, heights in m.
     #[must_use]
-    pub fn of(planes: &ImagePlanes) -> Self {
-        match (planes.below, planes.above) {
+    pub fn new(below: Option<f64>, above: Option<f64>) -> Self {
+        match (below, above) {
             (None, None) => Mirrors::None,
             (Some(z), None) | (None, Some(z)) => Mirrors::One(z),
             (Some(lo), Some(hi)) => Mirrors::Two(lo, hi - lo),
