@@ -57,7 +57,7 @@ fn model(t: &Truncation, x: f64, y: f64) -> f64 {
 }
 
 /// The model integrated over the plane outside the extent, in rectangles λ times the extent, u = 1/λ from 1 to 0:
-/// dA = λ dλ db e_x e_y = u⁻³ du db e_x e_y, on which the density falls as u³.
+/// `dA = λ dλ db e_x e_y = u⁻³ du db e_x e_y`, on which the density falls as u³.
 fn beyond(t: &Truncation) -> f64 {
     const PIECES: usize = 8;
     let (nodes, weights) = gauss(6);
