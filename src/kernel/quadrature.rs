@@ -99,7 +99,7 @@ mod tests {
     /// What: each rule is exact for every power up to 2 n - 1, and not for the next one.
     /// Derived: the integral of x^k over [0, 1] is 1 / (k + 1).
     /// Tolerance: 8 ε, rounding of at most six terms; the error at 2 n is (n!)^4 / ((2n + 1) ((2n)!)^2), at least 9e-8.
-    /// Seen to fail with: one node of `GAUSS_4` moved by 1e-9.
+    /// Should fail with (not yet tried): one node of `GAUSS_4` moved by 1e-9.
     #[test]
     fn rules_are_exact_to_their_degree_and_no_further() {
         for n in 1..=6usize {

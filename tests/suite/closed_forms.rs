@@ -51,7 +51,7 @@ fn check_rate(counts: &[usize], errors: &[f64], order: f64, last: f64) {
 /// What: capacitance of the unit cube, 4 π ε₀ times 0.660 678 154 (`HelsingPerfekt2013`), and its rate. Every error has
 /// the sign of a lower bound, as Galerkin's method promises.
 /// Tolerance: rate 1.3 in the number of panels, against 1.5 expected of grading 3; last error 1e-4, against 6.8e-5 measured.
-/// Seen to fail with: the factor 1/2 of the second antiderivative of r left out (`galerkin::twice_r`).
+/// Should fail with (not yet tried): the factor 1/2 of the second antiderivative of r left out (`galerkin::twice_r`).
 #[test]
 fn the_capacitance_of_a_cube_converges_from_below() {
     let (mut counts, mut errors) = (Vec::new(), Vec::new());
@@ -67,7 +67,7 @@ fn the_capacitance_of_a_cube_converges_from_below() {
 /// What: capacitance of the unit square sheet, 4 π ε₀ times 0.366 788 003(5) (computed reference, agreeing with
 /// `Read1997`), and its rate.
 /// Tolerance: rate 1.3 in the number of panels, against 1.5 expected of grading 4; last error 2e-4, against 8.1e-5 measured.
-/// Seen to fail with: 3 in place of 6 in r³/6 of `galerkin::twice_r`.
+/// Should fail with (not yet tried): 3 in place of 6 in r³/6 of `galerkin::twice_r`.
 #[test]
 fn the_capacitance_of_a_square_sheet_converges_from_below() {
     let (mut counts, mut errors) = (Vec::new(), Vec::new());
@@ -84,7 +84,7 @@ fn the_capacitance_of_a_square_sheet_converges_from_below() {
 /// the outer face 0.772 73 of the free charge (series of spherical capacitors, `Smythe1968`), from flat triangles.
 /// Tolerance: flat panels of the true area err by 0.26 % at 512 panels and by 1/n (`docs/formulation.md`); 0.5 % at 500
 /// panels a sphere.
-/// Seen to fail with: the sign of `pair::flux` turned; the two permittivities swapped in `Row::of`.
+/// Should fail with (not yet tried): the sign of `pair::flux` turned; the two permittivities swapped in `Row::of`.
 #[test]
 fn a_coated_sphere_has_its_capacitance_and_bound_charge() {
     let mut mesh = empty(&["core"], vec![body(4.4, true), body(1.0, false)]);

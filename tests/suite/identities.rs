@@ -55,7 +55,7 @@ fn difference(one: &Results, two: &Results, scale: f64) -> f64 {
 /// What: lengths times s give C times s; a turned and displaced body has the same C.
 /// Tolerance: 1e-9. The regimes are the same; the closed double integrals lose up to 1e7 ε = 2e-9 of a few entries
 /// (`galerkin::MAX_LOSS`), with signs that do not add up. Measured 6e-11 scaled by 10.
-/// Seen to fail with: `ALIGNED` an absolute length; a regime limit in m.
+/// Should fail with (not yet tried): `ALIGNED` an absolute length; a regime limit in m.
 #[test]
 fn scaling_and_motion_change_nothing_else() {
     let mesh = coated_pair(3.0);
@@ -68,7 +68,7 @@ fn scaling_and_motion_change_nothing_else() {
 }
 
 /// What: an interface between equal permittivities carries no charge and changes nothing.
-/// Tolerance: rounding, 1e-12. Seen to fail with: `er_to` for `er_to - er_from` in `Row::of`.
+/// Tolerance: rounding, 1e-12. Should fail with (not yet tried): `er_to` for `er_to - er_from` in `Row::of`.
 #[test]
 fn an_interface_between_equals_is_none() {
     let mesh = coated_pair(1.0);
@@ -80,7 +80,7 @@ fn an_interface_between_equals_is_none() {
 
 /// What: reciprocity, signs, dominance, charge at infinity and the neutrality of the coat all pass, and mean something:
 /// the same solution read with one permittivity wrong fails.
-/// Tolerance: the checks' own. Seen to fail with: `er - 1` for `1 - er` in `shares`; the coat's own faces left out.
+/// Tolerance: the checks' own. Should fail with (not yet tried): `er - 1` for `1 - er` in `shares`; the coat's own faces left out.
 #[test]
 fn a_coated_pair_passes_every_check() {
     let mesh = coated_pair(4.0);
@@ -102,7 +102,7 @@ fn a_coated_pair_passes_every_check() {
 }
 
 /// What: a box over an image plane has the charge of the box with its mirror image at -1 V, panel by panel.
-/// Tolerance: rounding, 1e-11; the pairs are the same. Seen to fail with: the image's sign turned.
+/// Tolerance: rounding, 1e-11; the pairs are the same. Should fail with (not yet tried): the image's sign turned.
 #[test]
 fn an_image_plane_is_the_mirrored_conductor() {
     let cuts = graded(4, 3.0);
@@ -123,7 +123,7 @@ fn an_image_plane_is_the_mirrored_conductor() {
 /// What: a box half embedded in a plane interface has (er1 + er2)/2 times its capacitance in vacuum, wherever the
 /// interface ends, and no charge on it.
 /// Derived: with the mirror's symmetry `E_n` vanishes on the plane. Tolerance: the near rules' 1e-6 on either side.
-/// Seen to fail with: er of the wrong half on the walls.
+/// Should fail with (not yet tried): er of the wrong half on the walls.
 #[test]
 fn a_half_embedded_box_has_the_mean_permittivity() {
     let build = |er: f64| {
@@ -163,7 +163,7 @@ fn a_half_embedded_box_has_the_mean_permittivity() {
 /// What: a floating box has no net charge and the potential that makes it so; its given charge shows in the others; and
 /// C with it floating is the Schur complement of C with it as a row.
 /// Derived: `docs/formulation.md`, "Floating nets". Tolerance: rounding, 1e-12 of the largest entry.
-/// Seen to fail with: the sign of the right-hand side in `superpose` turned.
+/// Should fail with (not yet tried): the sign of the right-hand side in `superpose` turned.
 #[test]
 fn a_floating_net_is_a_row_eliminated() {
     let rows = coated_pair(3.0);
@@ -237,7 +237,7 @@ fn patch(er: f64, reach: f64, n: usize) -> Mesh {
 /// Tolerance: C 5e-3, the mesh's error (10 x 10 graded: 1e-3 on the bare sheet, more beside the interface). The identity:
 /// a quarter of the tail, since the images of a slab of er 4.4 lie 2 h, 4 h ... deep with weights 0.63^n, and their next
 /// order is of size (4 h / 8 h)²; measured 1.5 % of the free charge with a tail of 9.5 % at 8 heights, 3.6 % and 19 % at 4.
-/// Seen to fail with: the tail left out; `er_above` and `er_below` swapped in `free_charge`.
+/// Should fail with (not yet tried): the tail left out; `er_above` and `er_below` swapped in `free_charge`.
 #[test]
 fn a_patch_on_a_grounded_slab_has_its_charge_with_the_tail() {
     let mesh = patch(4.4, 8.0, 10);
