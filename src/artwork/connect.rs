@@ -11,7 +11,7 @@ use super::{Artwork, ArtworkOptions, Copper, Hole, Lining, Pattern};
 use crate::diag::{Origin, Warning};
 use crate::geom::region::{Grid, Point, Region};
 use crate::job::{Job, LayerId, LayerKind, Stackup};
-use crate::net::{NameSource, NetTable};
+use crate::net::{NameSource, NetId, NetTable};
 use std::collections::{BTreeMap, BTreeSet};
 
 /// Copper as the files give it.
@@ -154,9 +154,11 @@ pub(super) fn connect(
         lining: node.map_or(Lining::Bare, |node| Lining::Plated(nets.1[node])),
         origin: hole.origin,
     });
+    let holes: Vec<Hole> = holes.collect();
+    tell_islands(&copper, &holes, &nets.0, stackup, warnings);
     Ok(Artwork {
         grid,
-        holes: holes.collect(),
+        holes,
         nets: nets.0,
         copper,
         patterns: draft.patterns,
@@ -277,9 +279,7 @@ fn label(
     errors: &mut Vec<ArtworkError>,
 ) {
     for label in &job.nets.labels {
-        let layer = stackup.find(&label.layer.name);
-        let at = grid.snap(label.at[0]).zip(grid.snap(label.at[1]));
-        let (Some(layer), Some((x, y))) = (layer, at) else {
+        let Some(layer) = stackup.find(&label.layer.name) else {
             errors.push(ArtworkError::at(
                 label.layer.origin,
                 Problem::UnknownLayer {
@@ -290,8 +290,10 @@ fn label(
             ));
             continue;
         };
+        let at = grid.snap(label.at[0]).zip(grid.snap(label.at[1])).map(|(x, y)| Point::new(x, y));
         let place = [label.at[0] * 1e3, label.at[1] * 1e3];
-        let Some(hit) = metal.iter().find(|m| m.layer == layer && m.region.contains(Point::new(x, y))) else {
+        let Some(hit) = metal.iter().find(|m| m.layer == layer && at.is_some_and(|at| m.region.contains(at)))
+        else {
             errors.push(ArtworkError::at(
                 label.net.origin,
                 Problem::LabelMisses {
@@ -406,11 +408,7 @@ impl LayerParts<'_> {
         grid: Grid,
         (nodes, seen, errors): (&mut Nodes, &mut BTreeSet<(String, String)>, &mut Vec<ArtworkError>),
     ) {
-        let is_dielectric = |id: LayerId| {
-            stackup.layers.get(id.idx()).is_some_and(|l| matches!(l.kind, LayerKind::Dielectric { .. }))
-        };
-        let stands_on =
-            |m: &&Metal| m.layer == layer || (m.layer.0.abs_diff(layer.0) == 1 && is_dielectric(m.layer));
+        let stands_on = |m: &&Metal| m.layer == layer || adjoining_dielectric(stackup, layer, m.layer);
         let mut parts: Vec<Part<'_>> = Vec::new();
         let mut origins = Vec::new();
         for m in self.metal.iter().filter(stands_on) {
@@ -459,7 +457,7 @@ impl LayerParts<'_> {
 
 /// The table of nets, and the net of every node: given names first, in the order in which they were met; then islands
 /// in the order of their layer and place; then holes that touch nothing.
-fn name_nodes(nodes: &mut Nodes, n_copper_nodes: usize) -> (NetTable, Vec<crate::net::NetId>) {
+fn name_nodes(nodes: &mut Nodes, n_copper_nodes: usize) -> (NetTable, Vec<NetId>) {
     let mut table = NetTable::default();
     for node in &nodes.nodes {
         if let Some(name) = &node.name {
@@ -467,7 +465,7 @@ fn name_nodes(nodes: &mut Nodes, n_copper_nodes: usize) -> (NetTable, Vec<crate:
         }
     }
     let mut number = 0;
-    let mut of_root: BTreeMap<usize, crate::net::NetId> = BTreeMap::new();
+    let mut of_root: BTreeMap<usize, NetId> = BTreeMap::new();
     let mut ids = Vec::with_capacity(nodes.nodes.len());
     debug_assert!(n_copper_nodes <= nodes.nodes.len());
     for node in 0..nodes.nodes.len() {
@@ -491,8 +489,8 @@ fn name_nodes(nodes: &mut Nodes, n_copper_nodes: usize) -> (NetTable, Vec<crate:
 }
 
 /// One region per layer and net.
-fn merge(metal: &mut Vec<Metal>, net_of: &[crate::net::NetId]) -> Vec<Copper> {
-    let mut groups: BTreeMap<(LayerId, crate::net::NetId), Vec<Metal>> = BTreeMap::new();
+fn merge(metal: &mut Vec<Metal>, net_of: &[NetId]) -> Vec<Copper> {
+    let mut groups: BTreeMap<(LayerId, NetId), Vec<Metal>> = BTreeMap::new();
     for m in metal.drain(..) {
         groups.entry((m.layer, net_of[m.node])).or_default().push(m);
     }
@@ -508,4 +506,60 @@ fn merge(metal: &mut Vec<Metal>, net_of: &[crate::net::NetId]) -> Vec<Copper> {
             Copper { layer, net, region, origin }
         })
         .collect()
+}
+
+/// Tells which given names lie on several islands that nothing joins: each is kept as one net.
+fn tell_islands(
+    copper: &[Copper],
+    holes: &[Hole],
+    nets: &NetTable,
+    stackup: &Stackup,
+    warnings: &mut Vec<Warning>,
+) {
+    let pieces: Vec<(LayerId, NetId, Region)> = copper
+        .iter()
+        .flat_map(|c| c.region.pieces().into_iter().map(|piece| (c.layer, c.net, piece)))
+        .collect();
+    let mut islands = Nodes { nodes: Vec::new(), parent: (0..pieces.len() + holes.len()).collect() };
+    for (layer, _) in stackup.iter() {
+        let stands_on = |other: LayerId| other == layer || adjoining_dielectric(stackup, layer, other);
+        let mut parts: Vec<Part<'_>> = Vec::new();
+        for (node, piece) in (0u32..).zip(&pieces).filter(|(_, piece)| stands_on(piece.0)) {
+            parts.push(Part { node, region: &piece.2 });
+        }
+        let first_hole = u32::try_from(pieces.len()).unwrap_or(u32::MAX);
+        for (node, hole) in (first_hole..).zip(holes) {
+            if matches!(hole.lining, Lining::Plated(_)) && (hole.from..=hole.to).contains(&layer) {
+                parts.push(Part { node, region: &hole.region });
+            }
+        }
+        let node = |k: usize| parts[k].node as usize;
+        let cell = std::cell::RefCell::new(&mut islands);
+        let same = |a, b| {
+            let mut islands = cell.borrow_mut();
+            islands.root(node(a)) == islands.root(node(b))
+        };
+        contacts(&parts, same, |a, b, _| {
+            let mut islands = cell.borrow_mut();
+            let (a, b) = (islands.root(node(a)), islands.root(node(b)));
+            islands.parent[a.max(b)] = a.min(b);
+        });
+    }
+    let mut roots: BTreeMap<NetId, BTreeSet<usize>> = BTreeMap::new();
+    for (k, piece) in pieces.iter().enumerate() {
+        roots.entry(piece.1).or_default().insert(islands.root(k));
+    }
+    let several = roots.iter().filter(|(_, roots)| roots.len() > 1);
+    let told: Vec<String> =
+        several.map(|(net, roots)| format!("`{}` ({})", nets.get(*net).name, roots.len())).collect();
+    if !told.is_empty() {
+        let text =
+            format!("nets whose copper lies in several islands that nothing joins: {}", told.join(", "));
+        warnings.push(Warning::new(text, Origin::default()));
+    }
+}
+
+/// Whether `other` is a dielectric right above or below `layer`, so that metal in it stands on `layer`.
+fn adjoining_dielectric(stackup: &Stackup, layer: LayerId, other: LayerId) -> bool {
+    layer.0.abs_diff(other.0) == 1 && matches!(stackup.get(other).kind, LayerKind::Dielectric { .. })
 }

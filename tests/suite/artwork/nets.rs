@@ -61,6 +61,9 @@ fn spellings_of_names() {
         %TO.N,\\u00B5*%X12000000D03*";
     let read = import(&[layer(0, "L1", body)], &job(), &board(1)).unwrap().value;
     assert_eq!(names(&read), ["A", "B", "\u{b5}", "island-1", "island-2"]);
+    let apart = "%TO.N,A*%X0Y0D03*X9000000D03*%TO.N,B*%X3000000D03*X3500000D03*";
+    let read = import(&[layer(0, "L1", apart)], &job(), &board(1)).unwrap();
+    assert!(read.warnings.iter().any(|w| w.text.ends_with("nothing joins: `A` (2)")), "{:?}", read.warnings);
 }
 
 fn shape(net: Option<&str>, layer: &str, from: [f64; 2], to: [f64; 2]) -> DrawnShape {
