@@ -199,6 +199,28 @@ pub enum SlabError {
     NothingLeft,
 }
 
+impl SlabError {
+    /// The line of the user's files that it is about; the default where it is about the whole.
+    #[must_use]
+    pub fn origin(&self) -> Origin {
+        match self {
+            SlabError::UnknownNet { origin, .. }
+            | SlabError::TwoRoles { origin, .. }
+            | SlabError::RowOutside { origin, .. }
+            | SlabError::Short { origin, .. }
+            | SlabError::BadFill { origin, .. }
+            | SlabError::BadNumber { origin, .. }
+            | SlabError::BadPlane { origin, .. }
+            | SlabError::PlaneShort { origin, .. } => *origin,
+            SlabError::NoRows { .. }
+            | SlabError::EmptyRegion { .. }
+            | SlabError::BadWindow { .. }
+            | SlabError::TooLarge { .. }
+            | SlabError::NothingLeft => Origin::default(),
+        }
+    }
+}
+
 fn nearest_help(nearest: &[String]) -> String {
     match nearest {
         [] => "name a net of the artwork".to_owned(),
