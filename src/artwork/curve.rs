@@ -280,7 +280,6 @@ mod tests {
 
     /// What: a circle has the area of the true circle and keeps the chord error.
     /// Derived: at [`corner_factor`]. Tolerance: rounding of n corners by half a step each, 2 pi r / 2 steps squared.
-    /// Seen to fail with: factor 1.
     #[test]
     fn a_circle_keeps_its_area() {
         for (radius, error) in [(50_000.0, 2_000.0), (150_000.0, 1_000.0), (1e7, 500.0)] {

@@ -38,7 +38,6 @@ fn copper_files(folder: &std::path::Path, board: &str, layers: &Value) -> Vec<In
 /// Source: `areas.json`, made by a general Gerber library with another polygon library, checked by a second one.
 /// Tolerance: 0.1 %, as that file states; its own two ways agree within 0.05 %. Pieces must be the same: on these
 /// boards none hangs on rounding.
-/// Seen to fail with: circles without the area factor (0.2 % low), clear polarity ignored.
 #[test]
 fn copper_areas_and_nets_of_six_boards() {
     let Some(folder) = shared() else { return };

@@ -32,7 +32,6 @@ fn segment(r: f64, d: f64) -> f64 {
 /// Derived: beside each entry; coordinates from the example itself.
 /// Tolerance: 1e-4 of the area. Grid rounding is 1 nm times the outline, under 1e-5 here; a skew stroke of 20 corners
 /// and more loses up to r^2 d^3 / 6 of its end caps, under 1e-4 of any of these.
-/// Seen to fail with: an aperture's hole left out; the second contour of a region subtracted instead of added.
 #[test]
 fn areas_by_hand() {
     let inch2 = 645.16;
