@@ -1,10 +1,119 @@
 //! The loop: [`SlabModel`](crate::slab::SlabModel) to [`Extraction`], mesh after mesh until each error bar fits.
 
+mod error;
+mod error_bar;
+mod level;
+mod options;
+mod sequence;
+
+use std::time::Instant;
+
 use crate::diag::Warning;
 use crate::faces::FaceGroup;
-use crate::net::ModelNet;
+use crate::job::{Accuracy, Job};
+use crate::net::{ModelNet, NameSource, Role};
 use crate::results::Results;
+use crate::slab::SlabModel;
 use faer::Mat;
+
+pub use error::ExtractError;
+pub use options::{Expectation, ExtractOptions, expect};
+pub use sequence::{Refinement, refine};
+
+/// Speed of light in vacuum, m/s: exact by the definition of the metre.
+const SPEED_OF_LIGHT: f64 = 299_792_458.0;
+/// A region is electrically small up to this part of a wavelength. Common practice.
+const SMALL_PART_OF_WAVELENGTH: f64 = 20.0;
+
+/// Where an extraction stands, for progress lines.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Progress {
+    /// Which level, from 1.
+    pub level: usize,
+    /// What is being done.
+    pub stage: &'static str,
+    /// Panels of this level.
+    pub panels: usize,
+}
+
+/// Extracts `model` under the rules of `job`: panels and solves level after level until the error bars fit the
+/// accuracy that the job asks for, or until `options` allows no finer level (then `target_met` is false and a
+/// warning says what stopped it). `progress` is told each step and must not mind the thread it is called on.
+///
+/// # Errors
+/// [`ExtractError::NoRows`] when no net has a row; [`ExtractError::TooLarge`] when two levels do not fit the limits;
+/// otherwise what the stages report.
+pub fn extract(
+    model: &SlabModel,
+    job: &Job,
+    options: &ExtractOptions,
+    progress: &(dyn Fn(Progress) + Sync),
+) -> Result<Extraction, ExtractError> {
+    if !model.nets.iter().any(|net| net.role == Role::Row) {
+        return Err(ExtractError::NoRows);
+    }
+    let started = Instant::now();
+    let mut warnings = Vec::new();
+    let faces = crate::faces::derive(model)?.drain(&mut warnings);
+    let faces_seconds = started.elapsed().as_secs_f64();
+    let refined = refine(&faces, job.accuracy, options, &mut warnings, progress)?;
+    let mut seconds = vec![("faces".to_owned(), faces_seconds)];
+    seconds.extend(refined.seconds);
+    Ok(Extraction {
+        title: job.title.clone(),
+        nets: faces.nets.clone(),
+        reference: reference(model, job),
+        bars: refined.bars,
+        groups: faces.groups.clone(),
+        dielectrics: model
+            .materials
+            .iter()
+            .map(|m| Dielectric { name: m.name.clone(), er: m.er, source: m.er_source.clone() })
+            .collect(),
+        mesh: refined.count,
+        solver: SolverReport {
+            method: refined.info.method,
+            relative_residual: refined.info.relative_residual,
+            seconds,
+            peak_memory: None,
+        },
+        results: refined.results,
+        target_met: refined.target_met,
+        accuracy: job.accuracy,
+        quasi_static_limit: quasi_static_limit(model),
+        frequency: job.frequency,
+        defaulted: defaulted(model, job),
+        warnings,
+    })
+}
+
+/// What is at 0 V: the ground nets, the layers of the image planes, and infinity, always.
+fn reference(model: &SlabModel, job: &Job) -> Vec<String> {
+    let grounds = model.nets.iter().filter(|net| net.role == Role::Ground).map(|net| net.name.clone());
+    let planes = job.nets.ground_planes.iter().map(|layer| layer.name.clone());
+    grounds.chain(planes).chain(["infinity".to_owned()]).collect()
+}
+
+/// Highest frequency at which the window's diagonal is at most a twentieth of the wavelength in its densest
+/// dielectric, Hz.
+fn quasi_static_limit(model: &SlabModel) -> f64 {
+    let (lo, hi) = (model.window.lo, model.window.hi);
+    let diagonal = model.grid.length(hi.x - lo.x).hypot(model.grid.length(hi.y - lo.y));
+    let densest = model.materials.iter().map(|m| m.er).fold(1.0, f64::max);
+    SPEED_OF_LIGHT / (SMALL_PART_OF_WAVELENGTH * diagonal * densest.sqrt())
+}
+
+fn defaulted(model: &SlabModel, job: &Job) -> DefaultedNets {
+    let named = |name: &str| job.nets.ground.iter().any(|ground| ground.name == name);
+    DefaultedNets {
+        grounded: model.nets.iter().filter(|net| net.role == Role::Ground && !named(&net.name)).count(),
+        floating: model
+            .nets
+            .iter()
+            .filter(|net| matches!(net.role, Role::Float { .. }) && net.source == NameSource::Numbered)
+            .count(),
+    }
+}
 
 /// The answer, every number with its bar.
 #[derive(Debug, Clone)]
@@ -30,7 +139,7 @@ pub struct Extraction {
     /// Whether every bar met the target.
     pub target_met: bool,
     /// The rule for the bars.
-    pub accuracy: crate::job::Accuracy,
+    pub accuracy: Accuracy,
     /// Highest frequency at which the region is smaller than a twentieth of a wavelength, Hz.
     pub quasi_static_limit: f64,
     /// Frequency at which permittivities were read, Hz.

@@ -1,0 +1,123 @@
+//! Half-widths of error bars, from the sequence of levels.
+//!
+//! ```text
+//! bar(q) = |q_fine - q_coarse| / (N_fine / N_coarse - 1) + truncation + (chord + residual) |q|
+//! ```
+//! The first term is what a sequence that converges like 1/N has left. On graded meshes the measured rate is near
+//! N^-1.5 (`docs/formulation.md`, "Error bars"), for which the true rest is about 0.55 of it at N ratio 2: the bar is
+//! meant to be 1 to 4 times the error. Two guards catch a difference that is small by accident: a quarter of what the
+//! level before predicts, and a tenth of the geometric mean of the two diagonal bars.
+
+use crate::extract::{Accuracy, Bars};
+use crate::results::Results;
+use faer::Mat;
+
+/// Part of the previous level's prediction that a bar never falls below.
+const PREVIOUS_SHARE: f64 = 0.25;
+/// Part of the diagonal bars' geometric mean that an off-diagonal bar never falls below.
+const DIAGONAL_SHARE: f64 = 0.1;
+/// The border of the extent is moved in by this factor to see what truncation does.
+pub(crate) const BORDER_MOVE: f64 = 1.5;
+
+/// What enters a bar besides the levels.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) struct OtherParts {
+    /// Relative error by arcs drawn as chords and by the grid.
+    pub(crate) chord: f64,
+    /// Relative residual of the solver.
+    pub(crate) residual: f64,
+}
+
+/// One solved mesh of the sequence: its results and its panel count.
+pub(crate) type Step<'a> = (&'a Results, usize);
+
+/// The two results of moving the border of the extent in, on one coarse mesh: whole and moved.
+pub(crate) type Moved<'a> = Option<(&'a Results, &'a Results)>;
+
+/// Bars of the values of the last step; `steps` holds two or more, coarse to fine.
+///
+/// A sequence of one step has no bar: every bar is infinite then.
+pub(crate) fn bars(steps: &[Step<'_>], moved: Moved<'_>, other: OtherParts) -> Bars {
+    let Some((fine, _)) = steps.last() else { return empty() };
+    let bar = |get: &dyn Fn(&Results) -> f64, truncated: bool| {
+        let truncation = if truncated { truncation(moved, get) } else { 0.0 };
+        levels(steps, get) + truncation + (other.chord + other.residual) * get(fine).abs()
+    };
+    let n_rows = fine.rows.len();
+    let mut maxwell = Mat::from_fn(n_rows, n_rows, |i, j| {
+        let defect = (fine.maxwell[(i, j)] - fine.maxwell[(j, i)]).abs();
+        bar(&|r| r.maxwell[(i, j)], true).max(defect)
+    });
+    for i in 0..n_rows {
+        for j in 0..n_rows {
+            if i != j {
+                let floor = DIAGONAL_SHARE * (maxwell[(i, i)] * maxwell[(j, j)]).sqrt();
+                let floor = floor.min(fine.maxwell[(i, j)].abs());
+                maxwell[(i, j)] = maxwell[(i, j)].max(floor);
+            }
+        }
+    }
+    Bars {
+        net_charge: Mat::from_fn(fine.net_charge.nrows(), n_rows, |k, j| {
+            bar(&|r| r.net_charge[(k, j)], true)
+        }),
+        to_reference: (0..n_rows)
+            .map(|i| {
+                bar(&|r| (0..n_rows).map(|j| r.maxwell[(i, j)]).sum(), true)
+                    .max(DIAGONAL_SHARE * maxwell[(i, i)])
+            })
+            .collect(),
+        group_free: per_group(fine, |g, j| bar(&|r| r.groups[g].free[j], false)),
+        group_bound: per_group(fine, |g, j| bar(&|r| r.groups[g].bound[j], false)),
+        maxwell,
+    }
+}
+
+/// Whether every bar of the matrix satisfies `bar_ij <= target * max(|C_ij|, floor * sqrt(C_ii C_jj))`.
+pub(crate) fn meets(results: &Results, bars: &Bars, accuracy: Accuracy) -> bool {
+    let c = &results.maxwell;
+    (0..c.nrows()).all(|i| {
+        (0..c.ncols()).all(|j| {
+            let scale = c[(i, j)].abs().max(accuracy.floor * (c[(i, i)] * c[(j, j)]).abs().sqrt());
+            bars.maxwell[(i, j)] <= accuracy.target * scale
+        })
+    })
+}
+
+fn levels(steps: &[Step<'_>], get: &dyn Fn(&Results) -> f64) -> f64 {
+    let rest = |pair: &[Step<'_>]| {
+        let [(coarse, n_coarse), (fine, n_fine)] = pair else { return f64::INFINITY };
+        if n_fine <= n_coarse {
+            return f64::INFINITY;
+        }
+        #[expect(clippy::cast_precision_loss, reason = "panel counts are far below 2^53")]
+        let ratio = *n_fine as f64 / *n_coarse as f64;
+        (get(fine) - get(coarse)).abs() / (ratio - 1.0)
+    };
+    match steps {
+        [] | [_] => f64::INFINITY,
+        [.., a, b, c] => rest(&[*b, *c]).max(PREVIOUS_SHARE * rest(&[*a, *b])),
+        [a, b] => rest(&[*a, *b]),
+    }
+}
+
+/// Error left by ending the interfaces where they end. It falls at least as R^-2 with the extent R (potential of
+/// a charge ring that falls as R^-3 or faster), so what moving the border from R/m to R changed, divided by m² - 1,
+/// bounds what is left.
+fn truncation(moved: Moved<'_>, get: &dyn Fn(&Results) -> f64) -> f64 {
+    moved.map_or(0.0, |(whole, inner)| (get(whole) - get(inner)).abs() / (BORDER_MOVE * BORDER_MOVE - 1.0))
+}
+
+fn per_group(fine: &Results, bar: impl Fn(usize, usize) -> f64) -> Vec<Vec<f64>> {
+    (0..fine.groups.len()).map(|g| (0..fine.rows.len()).map(|j| bar(g, j)).collect()).collect()
+}
+
+fn empty() -> Bars {
+    Bars {
+        maxwell: Mat::zeros(0, 0),
+        net_charge: Mat::zeros(0, 0),
+        to_reference: Vec::new(),
+        group_free: Vec::new(),
+        group_bound: Vec::new(),
+    }
+}

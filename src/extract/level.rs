@@ -1,0 +1,104 @@
+//! One level of refinement: faces to results at one density, timed stage by stage.
+
+use std::time::Instant;
+
+use crate::diag::Warning;
+use crate::extract::error::ExtractError;
+use crate::extract::{MeshCount, Progress};
+use crate::faces::{EdgeGrade, Faces};
+use crate::geom::PanelShape;
+use crate::mesh::{Mesh, MeshOptions, PanelId, PanelKind, SplitDirection};
+use crate::results::Results;
+use crate::solve::SolveInfo;
+
+/// One solved mesh.
+#[derive(Debug, Clone)]
+pub(crate) struct Level {
+    /// What it says.
+    pub(crate) results: Results,
+    /// Its panels.
+    pub(crate) count: MeshCount,
+    /// How well it was solved.
+    pub(crate) info: SolveInfo,
+    /// Stage and seconds.
+    pub(crate) seconds: Vec<(&'static str, f64)>,
+}
+
+/// Panels the faces at `density`; warnings are appended to `warnings`.
+///
+/// Grading leaves faces alone at whose edges no charge crowds (facets of smooth bodies, interfaces far from metal).
+/// They are cut in two `halvings` times, so that they get finer from level to level like all others.
+pub(crate) fn panelize(
+    faces: &Faces,
+    density: f64,
+    (halvings, max_panels): (usize, usize),
+    warnings: &mut Vec<Warning>,
+) -> Result<Mesh, ExtractError> {
+    let options = MeshOptions { density, max_panels };
+    let mut mesh = crate::mesh::panelize(faces, &options)?.drain(warnings);
+    let smooth: Vec<bool> = faces
+        .faces
+        .iter()
+        .map(|face| face.rings.iter().flat_map(|ring| &ring.edges).all(|edge| *edge == EdgeGrade::Smooth))
+        .collect();
+    for _ in 0..halvings {
+        let cuts: Vec<(PanelId, SplitDirection)> = (0u32..)
+            .zip(&mesh.panels)
+            .filter(|(_, panel)| smooth.get(panel.face as usize).copied().unwrap_or(false))
+            .map(|(k, panel)| (PanelId(k), across_longer_side(&panel.shape)))
+            .collect();
+        if cuts.is_empty() {
+            break;
+        }
+        mesh = mesh.split(&cuts);
+    }
+    Ok(mesh)
+}
+
+/// The direction that cuts the longer sides of a quadrilateral; the longest side of a triangle.
+fn across_longer_side(shape: &PanelShape) -> SplitDirection {
+    match *shape.corners() {
+        [a, b, c, d] if (c - b).norm() + (a - d).norm() > (b - a).norm() + (d - c).norm() => {
+            SplitDirection::Second
+        }
+        _ => SplitDirection::First,
+    }
+}
+
+/// Solves one mesh and evaluates it.
+pub(crate) fn solve(
+    mesh: &Mesh,
+    level: usize,
+    progress: &(dyn Fn(Progress) + Sync),
+) -> Result<Level, ExtractError> {
+    let count = count(mesh);
+    let tell = |stage| progress(Progress { level, stage, panels: count.panels });
+    let mut seconds = Vec::new();
+    let mut clock = Instant::now();
+    let mut lap = |stage| {
+        seconds.push((stage, clock.elapsed().as_secs_f64()));
+        clock = Instant::now();
+    };
+    tell("assembling");
+    let system = crate::system::assemble(mesh)?;
+    lap("assemble");
+    tell("solving");
+    let charge = crate::solve::solve_dense(system)?;
+    lap("solve");
+    tell("evaluating");
+    let results = crate::results::evaluate(mesh, &charge)?;
+    lap("evaluate");
+    Ok(Level { results, count, info: charge.info, seconds })
+}
+
+/// Counts the panels of a mesh by kind.
+pub(crate) fn count(mesh: &Mesh) -> MeshCount {
+    let interface_panels =
+        mesh.panels.iter().filter(|panel| matches!(panel.kind, PanelKind::Interface { .. })).count();
+    MeshCount {
+        panels: mesh.panels.len(),
+        conductor_panels: mesh.panels.len() - interface_panels,
+        interface_panels,
+        levels: 0,
+    }
+}
