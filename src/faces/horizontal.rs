@@ -10,6 +10,7 @@ use crate::faces::{EdgeGrade, FaceKind, FacesError, GroupKind, Ring};
 use crate::geom::Vec3;
 use crate::geom::region::{Bounds, Contour, Point, Region};
 use crate::geom::snap::SnapRing;
+use crate::net::NetId;
 use crate::slab::{Fill, SlabModel};
 use std::collections::{BTreeMap, HashMap};
 
@@ -47,25 +48,74 @@ pub(crate) fn levels(model: &SlabModel, conformed: &Conformed) -> Vec<Level> {
                 .iter()
                 .map(|s| (s.net, Region::from_rings_keeping(s.rings.iter().map(|r| &r.points))))
                 .collect();
-            let mut parts: Vec<(Side, Region)> = Vec::new();
-            for (low, low_region) in &below {
-                for (high, high_region) in &above {
-                    let mut rest = common(low_region, high_region);
-                    for (net, sheet) in &sheets {
-                        let on_sheet = common(&rest, sheet);
-                        if !on_sheet.is_empty() {
-                            rest = rest.difference_keeping(sheet);
-                            parts.push((Side { below: *low, above: *high, sheet: Some(*net) }, on_sheet));
-                        }
-                    }
-                    if !rest.is_empty() {
-                        parts.push((Side { below: *low, above: *high, sheet: None }, rest));
-                    }
-                }
-            }
+            let parts = overlaid(below, above)
+                .into_iter()
+                .flat_map(|(below, above, region)| {
+                    under_sheets(Side { below, above, sheet: None }, region, &sheets)
+                })
+                .collect();
             level(model.slabs[k].z_lo, parts)
         })
         .collect()
+}
+
+/// Every pair of a fill below and one above with what they have in common. Both lists tile the extent; equal fills
+/// are paired first, for where nothing changes from slab to slab nothing is left to compare after that.
+fn overlaid(below: Vec<(Fill, Region)>, above: Vec<(Fill, Region)>) -> Vec<(Fill, Fill, Region)> {
+    let pairs = |equal: bool| {
+        let above = &above;
+        below.iter().enumerate().flat_map(move |(i, low)| {
+            above
+                .iter()
+                .enumerate()
+                .filter(move |(_, high)| (low.0 == high.0) == equal)
+                .map(move |(j, _)| (i, j))
+        })
+    };
+    let order: Vec<(usize, usize)> = pairs(true).chain(pairs(false)).collect();
+    let with_bounds = |fills: Vec<(Fill, Region)>| -> Vec<_> {
+        fills.into_iter().map(|(fill, region)| (fill, region.bounds(), region)).collect()
+    };
+    let (mut below, mut above) = (with_bounds(below), with_bounds(above));
+    let mut out = Vec::new();
+    for (i, j) in order {
+        let ((low_fill, low_bounds, low), (high_fill, high_bounds, high)) = (&mut below[i], &mut above[j]);
+        if !low_bounds.zip(*high_bounds).is_some_and(|(a, b)| a.meets(&b)) {
+            continue;
+        }
+        if low == high {
+            out.push((*low_fill, *high_fill, std::mem::take(low)));
+            *high = Region::empty();
+            (*low_bounds, *high_bounds) = (None, None);
+            continue;
+        }
+        let both = low.intersection_keeping(high);
+        if both.is_empty() {
+            continue;
+        }
+        *low = low.difference_keeping(&both);
+        *high = high.difference_keeping(&both);
+        (*low_bounds, *high_bounds) = (low.bounds(), high.bounds());
+        out.push((*low_fill, *high_fill, both));
+    }
+    out
+}
+
+/// `region`, cut up by the sheets in it.
+fn under_sheets(side: Side, region: Region, sheets: &[(NetId, Region)]) -> Vec<(Side, Region)> {
+    let mut parts = Vec::new();
+    let mut rest = region;
+    for (net, sheet) in sheets {
+        let on_sheet = common(&rest, sheet);
+        if !on_sheet.is_empty() {
+            rest = rest.difference_keeping(sheet);
+            parts.push((Side { sheet: Some(*net), ..side }, on_sheet));
+        }
+    }
+    if !rest.is_empty() {
+        parts.push((side, rest));
+    }
+    parts
 }
 
 fn level(z: f64, parts: Vec<(Side, Region)>) -> Level {

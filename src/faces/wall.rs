@@ -10,7 +10,7 @@ use crate::faces::rule::{Verdict, verdict};
 use crate::faces::{EdgeGrade, FacesError, Ring};
 use crate::geom::Vec3;
 use crate::geom::region::{Point, Region};
-use crate::geom::snap::SnapRing;
+use crate::geom::snap::{Run, SnapRing, alike, left_of, runs};
 use crate::net::NetId;
 use crate::slab::{Fill, Place, SlabModel};
 use std::collections::{BTreeMap, HashMap, HashSet};
@@ -56,8 +56,8 @@ pub(crate) fn wall_faces(
             model,
             j,
             cells,
-            foot: left_cells(cells, |cell| &cell.bottom),
-            top: left_cells(cells, |cell| &cell.top),
+            foot: left_of(cells.iter().map(|cell| cell.bottom.as_slice())),
+            top: left_of(cells.iter().map(|cell| cell.top.as_slice())),
             below: j.checked_sub(1).and_then(|k| levels.get(k)),
             above: levels.get(j),
             sharp: sharp_metal(cells),
@@ -78,21 +78,6 @@ pub(crate) fn wall_faces(
         }
     }
     Ok(())
-}
-
-fn left_cells(
-    cells: &[CellOutline],
-    rings: fn(&CellOutline) -> &[SnapRing],
-) -> HashMap<(Point, Point), usize> {
-    let mut left = HashMap::new();
-    for (idx, cell) in cells.iter().enumerate() {
-        for ring in rings(cell) {
-            for (k, a) in ring.points.iter().enumerate() {
-                left.insert((*a, ring.points[(k + 1) % ring.points.len()]), idx);
-            }
-        }
-    }
-    left
 }
 
 /// Convex corners of each net's metal, cells of one net united.
@@ -143,9 +128,7 @@ impl WallSlab<'_> {
     fn leaning_pieces(&self, foot: &SnapRing, top: &SnapRing) -> Result<Vec<Piece>, FacesError> {
         let feet = runs(foot, &self.foot);
         let tops = runs(top, &self.top);
-        let same = feet.len() == tops.len()
-            && feet.iter().zip(&tops).all(|(f, t)| f.source == t.source && f.neighbour == t.neighbour);
-        if !same {
+        if !alike(&feet, &tops) {
             let at = foot.points.first().copied().unwrap_or(self.model.extent.lo);
             let slab = self.model.slabs[self.j].name.clone();
             return Err(FacesError::LeaningWall { slab, place: Place::new(self.model.grid, at) });
@@ -205,27 +188,6 @@ impl WallSlab<'_> {
         grades.push(corner(piece.foot[0]));
         (points, grades)
     }
-}
-
-/// A run of sub-edges of one original edge with one neighbour.
-struct Run {
-    source: u32,
-    neighbour: Option<usize>,
-    points: Vec<Point>,
-}
-
-fn runs(ring: &SnapRing, left: &HashMap<(Point, Point), usize>) -> Vec<Run> {
-    let n = ring.points.len();
-    let mut runs: Vec<Run> = Vec::new();
-    for k in 0..n {
-        let (a, b) = (ring.points[k], ring.points[(k + 1) % n]);
-        let neighbour = left.get(&(b, a)).copied();
-        match runs.last_mut() {
-            Some(run) if run.source == ring.source[k] && run.neighbour == neighbour => run.points.push(b),
-            _ => runs.push(Run { source: ring.source[k], neighbour, points: vec![a, b] }),
-        }
-    }
-    runs
 }
 
 /// Unit normal of a ring by the sum of its edges' vector areas; `None` when it has no area.

@@ -1,6 +1,6 @@
 //! Copper as it comes out of the etching bath: bias on every edge, leaning walls, and plated barrels.
 
-use crate::artwork::{Artwork, Lining};
+use crate::artwork::{Artwork, Copper, Lining};
 use crate::diag::{Origin, Warning};
 use crate::geom::region::{Grid, Point, Region};
 use crate::job::{LayerId, LayerKind, Stackup, WideFace};
@@ -26,12 +26,14 @@ pub(crate) struct Lean {
     pub(crate) wide_below: bool,
 }
 
-/// The artwork's copper with etch bias, one entry per layer and joined net; shorts go to `errors`.
+/// The artwork's copper with etch bias, one entry per layer and joined net; shorts go to `errors`, copper that the
+/// bias removes or breaks in two to `warnings`.
 pub(crate) fn etched(
     artwork: &Artwork,
     stackup: &Stackup,
     stands_for: &[NetId],
     errors: &mut Vec<SlabError>,
+    warnings: &mut Vec<Warning>,
 ) -> Vec<Metal> {
     let mut metals: Vec<Metal> = Vec::new();
     let mut biased = vec![false; stackup.layers.len()];
@@ -41,6 +43,9 @@ pub(crate) fn etched(
             _ => 0,
         };
         let wide = copper.region.offset(bias);
+        if bias < 0 {
+            warn_of_losses(artwork, stackup, copper, bias, warnings);
+        }
         biased[copper.layer.idx()] |= bias > 0;
         let net = stands_for[copper.net.idx()];
         match metals.iter_mut().find(|m| m.layer == copper.layer && m.net == net) {
@@ -66,6 +71,27 @@ pub(crate) fn etched(
         }
     }
     metals
+}
+
+/// A warning for each piece of `copper` that an inward `bias` removes or breaks up.
+fn warn_of_losses(
+    artwork: &Artwork,
+    stackup: &Stackup,
+    copper: &Copper,
+    bias: i64,
+    warnings: &mut Vec<Warning>,
+) {
+    for piece in copper.region.pieces() {
+        let what = match piece.offset(bias).shapes().len() {
+            0 => "removes copper",
+            1 => continue,
+            _ => "breaks up copper",
+        };
+        let place = Place::new(artwork.grid, piece.corner().unwrap_or(Point::new(0, 0)));
+        let (net, layer) = (&artwork.nets.get(copper.net).name, &stackup.get(copper.layer).name);
+        let text = format!("the etch bias {what} of `{net}` in `{layer}` at {place}");
+        warnings.push(Warning::new(text, copper.origin));
+    }
 }
 
 /// Barrels of plated holes against copper of other nets: shorts go to `errors`.

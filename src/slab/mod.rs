@@ -41,7 +41,7 @@ pub fn build(
     let pile = pile::pile(stackup, &mut errors);
     let plan = roles::plan(artwork, job, &mut errors);
     refuse(&mut errors)?;
-    let metals = copper::etched(artwork, stackup, &plan.stands_for, &mut errors);
+    let metals = copper::etched(artwork, stackup, &plan.stands_for, &mut errors, &mut warnings);
     copper::check_barrels(artwork, stackup, &plan.stands_for, &metals, &mut errors);
     let window = region_choice::window(artwork, &pile, job, (&metals, &plan), &mut errors);
     let Some(window) = window else { return Err(SlabErrors(errors)) };
@@ -80,6 +80,7 @@ pub fn build(
     let extent = region_choice::extent(artwork, frames, highest - lowest, bounded, options, &mut errors);
     let Some(extent) = extent else { return Err(SlabErrors(errors)) };
     let scene = scene((artwork, stackup, &pile), &nets, &model_id, (window, extent), coats);
+    warn_of_outline(&scene, images, &metals, &mut warnings);
     let (slabs, sheets) = slice(&scene, &levels, images, (&metals, &model_id), &mut warnings);
     let (chord_error, grid) = (artwork.chord_error, artwork.grid);
     let materials = pile.materials.clone();
@@ -187,6 +188,29 @@ fn scene<'a>(
     barrels.retain(|barrel| !barrel.region.is_empty());
     bare.retain(|hole| !hole.region.is_empty());
     Scene { artwork, stackup, pile, nets, window, extent, bounds, profile, coats, barrels, bare }
+}
+
+/// Warns of copper outside of the board, and of a board between two different open media.
+fn warn_of_outline(scene: &Scene<'_>, planes: ImagePlanes, metals: &[Metal], warnings: &mut Vec<Warning>) {
+    let (Some(profile), Some(inside)) = (&scene.artwork.profile, &scene.profile) else { return };
+    for metal in metals {
+        let outside = metal.wide.intersection(&scene.window).difference(profile);
+        if let Some(at) = outside.corner() {
+            let layer = &scene.stackup.get(metal.layer).name;
+            let (net, place) = (&scene.artwork.nets.get(metal.net).name, Place::new(scene.artwork.grid, at));
+            let text =
+                format!("copper of `{net}` in `{layer}` lies outside of the board at {place}; it is kept");
+            warnings.push(Warning::new(text, metal.origin));
+        }
+    }
+    let (Some(first), Some(last)) = (scene.pile.entries.first(), scene.pile.entries.last()) else { return };
+    let er = |entry: &Entry| scene.pile.materials[scene.pile.fill(entry.layer).0 as usize].er;
+    let differ = er(first).to_bits() != er(last).to_bits() && planes == ImagePlanes::default();
+    if differ && !inside.is_empty() {
+        let text = "the media above and below the board differ; beside the board the upper one is modelled, down to \
+                    the lower face";
+        warnings.push(Warning::new(text, scene.stackup.get(last.layer).origin));
+    }
 }
 
 /// The slabs between `levels`, the half-spaces where no plane bounds them, and the sheets.

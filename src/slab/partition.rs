@@ -7,13 +7,14 @@ use crate::artwork::{Artwork, Pattern};
 use crate::diag::Warning;
 use crate::geom::offset::length;
 use crate::geom::region::{Bounds, Contour, Region};
+use crate::geom::snap::{Outline, SnapRing, alike, left_of, runs, snap};
 use crate::job::{LayerId, Stackup};
 use crate::net::{ModelNet, NetId, Role};
 use crate::slab::coating::{Coat, Reach};
 use crate::slab::copper::{Lean, Metal, lean, leaning, mean_outline};
 use crate::slab::pile::{Entry, EntryKind, Pile};
 use crate::slab::{Cell, Fill, Sheet, Slab};
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// All that the partition of a slab draws on, settled and clipped.
 pub(crate) struct Scene<'a> {
@@ -54,6 +55,9 @@ pub(crate) struct LayerCopper {
     metals: Vec<LayerMetal>,
     lean: Option<Lean>,
 }
+
+/// How often nets that cannot lean are made upright before the whole layer is.
+const LEAN_ATTEMPTS: usize = 5;
 
 type Parts = Vec<(Fill, Region)>;
 
@@ -160,27 +164,31 @@ impl Scene<'_> {
         let name = self.stackup.get(entry.layer).name.clone();
         let at = |z: f64| (z - entry.z_lo) / (entry.z_hi - entry.z_lo);
         let parts_with = |metals: BTreeMap<NetId, Region>| self.parts(entry, (z_lo, z_hi), &metals, coated);
-        let outline = |t: f64| {
-            let mut metals = BTreeMap::new();
-            for m in &copper.metals {
-                let region = if m.foot == m.top { m.foot.clone() } else { m.foot.between(&m.top, t) };
-                metals.insert(m.net, region);
-            }
-            metals
+        let outline = |t: f64, stiff: &BTreeSet<NetId>| {
+            let region = |m: &LayerMetal| match (stiff.contains(&m.net), m.foot == m.top) {
+                (true, _) => m.mean.clone(),
+                (false, true) => m.foot.clone(),
+                (false, false) => m.foot.between(&m.top, t),
+            };
+            copper.metals.iter().map(|m| (m.net, region(m))).collect::<BTreeMap<_, _>>()
         };
         if let Some(slope) = copper.lean {
-            let (foot, top) = (parts_with(outline(at(z_lo))), parts_with(outline(at(z_hi))));
-            let background = background(&foot, &self.bounds);
-            if let (Some(cells), Fill::Dielectric(background)) =
-                (leaning_cells(&foot, &top, background, reach_of(slope)), background)
-            {
-                return Slab { name, z_lo, z_hi, background, cells };
+            let mut stiff = BTreeSet::new();
+            for _ in 0..LEAN_ATTEMPTS {
+                let foot = parts_with(outline(at(z_lo), &stiff));
+                let top = parts_with(outline(at(z_hi), &stiff));
+                let background = background(&foot, &self.bounds);
+                let Fill::Dielectric(material) = background else { break };
+                match leaning_cells(&foot, &top, background, reach_of(slope)) {
+                    Ok(cells) => {
+                        self.warn_of_stiff(&stiff, entry, warnings);
+                        return Slab { name, z_lo, z_hi, background: material, cells };
+                    }
+                    Err(nets) if nets.is_empty() || nets.is_subset(&stiff) => break,
+                    Err(nets) => stiff.extend(nets),
+                }
             }
-            let text = format!(
-                "leaning walls in `{name}` meet a drill, a pattern or an opening at a corner; this layer has upright \
-                 walls at the mean width instead"
-            );
-            warnings.push(Warning::new(text, self.stackup.get(entry.layer).origin));
+            self.warn_of_stiff(&copper.metals.iter().map(|m| m.net).collect(), entry, warnings);
         }
         let upright = copper.metals.iter().map(|m| (m.net, m.mean.clone())).collect();
         let parts = parts_with(upright);
@@ -196,6 +204,22 @@ impl Scene<'_> {
             .map(|(fill, r)| Cell { fill, bottom: r.clone(), top: r })
             .collect();
         Slab { name, z_lo, z_hi, background: material, cells }
+    }
+
+    /// One warning for each net whose walls could not lean in a layer.
+    fn warn_of_stiff(&self, stiff: &BTreeSet<NetId>, entry: &Entry, warnings: &mut Vec<Warning>) {
+        for net in stiff {
+            let (net, layer) = (&self.nets[net.idx()], self.stackup.get(entry.layer));
+            let text = format!(
+                "leaning walls of `{}` in `{}` meet a drill, a film or an opening at a corner; between two heights of \
+                 this layer they stand upright at the mean width instead",
+                net.name, layer.name
+            );
+            let warning = Warning::new(text, net.origin);
+            if !warnings.contains(&warning) {
+                warnings.push(warning);
+            }
+        }
     }
 
     /// The whole extent, cut up by fill.
@@ -337,19 +361,56 @@ fn along(ring: &Contour, extent: &Bounds) -> f64 {
         .sum()
 }
 
-/// Cells of a slab with leaning walls; `None` when foot and top do not match corner by corner.
-fn leaning_cells(foot: &Parts, top: &Parts, background: Fill, reach: f64) -> Option<Vec<Cell>> {
-    if foot.len() != top.len() {
-        return None;
+/// Cells of a slab with leaning walls.
+///
+/// # Errors
+/// The nets whose foot and top do not match corner by corner or do not meet the same neighbours; empty when that
+/// cannot be told.
+fn leaning_cells(
+    foot: &Parts,
+    top: &Parts,
+    background: Fill,
+    reach: f64,
+) -> Result<Vec<Cell>, BTreeSet<NetId>> {
+    let fills = |parts: &Parts| parts.iter().map(|(fill, _)| *fill).collect::<Vec<_>>();
+    if fills(foot) != fills(top) {
+        return Err(BTreeSet::new());
     }
-    let mut cells = Vec::new();
-    for ((fill, bottom), (top_fill, top)) in foot.iter().zip(top) {
-        if fill != top_fill {
-            return None;
-        }
-        if *fill != background {
-            cells.push(Cell { fill: *fill, bottom: bottom.clone(), top: bottom.aligned(top, reach)? });
+    let mut cells: Vec<Cell> = Vec::new();
+    for ((fill, bottom), (_, top)) in foot.iter().zip(top).filter(|((fill, _), _)| *fill != background) {
+        match (bottom.aligned(top, reach), fill) {
+            (Some(top), _) => cells.push(Cell { fill: *fill, bottom: bottom.clone(), top }),
+            (None, Fill::Metal(net)) => return Err(BTreeSet::from([*net])),
+            (None, Fill::Dielectric(_)) => return Err(BTreeSet::new()),
         }
     }
-    Some(cells)
+    let snapped = |rings: fn(&Cell) -> &Region| {
+        let outline = |cell: &Cell| Outline {
+            rings: rings(cell).contours().map(|ring| SnapRing::new(ring.clone())).collect(),
+            lo: 0,
+            hi: 0,
+            keep_corners: true,
+        };
+        let mut outlines: Vec<Outline> = cells.iter().map(outline).collect();
+        snap(&mut outlines, 1);
+        outlines
+    };
+    let (feet, tops) = (snapped(|cell| &cell.bottom), snapped(|cell| &cell.top));
+    let left_foot = left_of(feet.iter().map(|outline| outline.rings.as_slice()));
+    let left_top = left_of(tops.iter().map(|outline| outline.rings.as_slice()));
+    let mut culprits = BTreeSet::new();
+    for (cell, (foot, top)) in cells.iter().zip(feet.iter().zip(&tops)) {
+        for (foot, top) in foot.rings.iter().zip(&top.rings) {
+            let (foot, top) = (runs(foot, &left_foot), runs(top, &left_top));
+            if alike(&foot, &top) {
+                continue;
+            }
+            let across = foot.iter().chain(&top).filter_map(|run| run.neighbour).map(|k| cells[k].fill);
+            culprits.extend(std::iter::once(cell.fill).chain(across).filter_map(|fill| match fill {
+                Fill::Metal(net) => Some(net),
+                Fill::Dielectric(_) => None,
+            }));
+        }
+    }
+    if culprits.is_empty() { Ok(cells) } else { Err(culprits) }
 }

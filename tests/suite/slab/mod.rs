@@ -34,7 +34,7 @@ fn grades(face: &Face) -> Vec<Vec<EdgeGrade>> {
 }
 
 /// What: a trace on a dielectric over an image plane: every area and edge grade. Derived: by hand.
-/// Tolerance: rounding. Seen to fail with: the plane at the copper's lower face.
+/// Tolerance: rounding.
 #[test]
 fn a_trace_over_an_image_plane() {
     let board = two_layer().copper("top", "SIG", rect(0, 0, 1000, 100)).planes(&["bottom"]);
@@ -68,7 +68,6 @@ fn a_trace_over_an_image_plane() {
 
 /// What: solder mask over a trace has shoulders: its outer surface goes over the copper without a gap. Derived: the
 /// outer surface is the flat part plus the four shoulder walls, from the film on the laminate to the film on the copper.
-/// Seen to fail with: `beside` left at 0 in the film's reach.
 #[test]
 fn a_coated_trace_has_shoulders() {
     let board = Board::new(vec![
@@ -218,7 +217,7 @@ fn four_layer() -> Board {
 
 /// What: a leaning trace has the volume of its frustum; its foot is the wide face. Derived: prismatoid formula with
 /// inset 30 um / tan 60 deg = 17.3205 um on each side.
-/// Tolerance: corners are rounded to 1 nm of some 65 um of width: 2e-5. Seen to fail with: the narrow face below.
+/// Tolerance: corners are rounded to 1 nm of some 65 um of width: 2e-5.
 #[test]
 fn a_leaning_trace_is_a_trapezoid_in_section() {
     let mut board = two_layer().copper("top", "SIG", rect(0, 0, 1000, 100)).planes(&["bottom"]);
@@ -408,4 +407,59 @@ fn corners_are_graded() {
         .collect();
     let solid = upright.iter().filter(|g| **g == EdgeGrade::Solid).count();
     assert_eq!((solid, upright.len()), (6, 22), "three corners, seen from both sides");
+}
+
+/// What: between two planes done by images there is one dielectric and no truncation; no half-space is left. Derived.
+#[test]
+fn a_stripline_between_two_planes() {
+    let board = Board::new(vec![
+        open("above", 1.0),
+        conductor("lid", 35.0),
+        dielectric("upper", 4.0, 200.0),
+        conductor("strip", 18.0),
+        dielectric("lower", 4.0, 200.0),
+        conductor("floor", 35.0),
+        open("below", 1.0),
+    ])
+    .copper("strip", "SIG", rect(0, 0, 1000, 100))
+    .planes(&["lid", "floor"]);
+    let (model, faces) = board.build();
+    assert_close(model.planes.below.unwrap(), 35e-6, ROUNDING);
+    assert_close(model.planes.above.unwrap(), 453e-6, ROUNDING);
+    assert_eq!((model.slabs.len(), faces.faces.len()), (3, 6));
+    assert!(faces.truncation.is_none());
+    assert_eq!((faces.outer_er.above, faces.outer_er.below), (None, None));
+    assert_all_closed(&faces);
+}
+
+/// What: a plane above the rows, with a post of a ground net that ends on it: the post has no face there. Derived.
+#[test]
+fn a_post_ends_on_a_plane_above() {
+    let board = two_layer()
+        .copper("bottom", "SIG", rect(0, 0, 1000, 100))
+        .copper("bottom", "GND", rect(0, 200, 100, 300))
+        .copper("core", "GND", rect(0, 200, 100, 300))
+        .ground(&["GND"])
+        .planes(&["top"]);
+    let (model, faces) = board.build();
+    assert_close(model.planes.above.unwrap(), 235e-6, ROUNDING);
+    let post = metal(&faces, "GND");
+    assert_close(post.area, (1e4 + 400.0 * 235.0) * 1e-12, ROUNDING);
+    assert_close(post.vector.z, -1e-8, ROUNDING);
+    assert_close(metal(&faces, "SIG").volume, 1000.0 * 100.0 * 35.0 * 1e-18, ROUNDING);
+}
+
+/// What: unnamed copper that touches the plane is ground, with a warning; elsewhere it floats.
+#[test]
+fn unnamed_copper_on_the_plane_is_ground() {
+    let board = two_layer()
+        .copper("top", "SIG", rect(0, 0, 100, 100))
+        .copper("top", "#1", rect(200, 0, 300, 100))
+        .barrel("top", "bottom", "#1", rect(220, 20, 280, 80))
+        .copper("top", "#2", rect(400, 0, 500, 100))
+        .planes(&["bottom"]);
+    let (model, _, warnings) = board.build_warned();
+    let role = |name: &str| model.nets.iter().find(|n| n.name == name).unwrap().role;
+    assert_eq!((role("#1"), role("#2")), (Role::Ground, Role::Float { charge: 0.0 }));
+    assert!(warnings.len() == 1 && warnings[0].contains("`#1`"), "{warnings:?}");
 }
