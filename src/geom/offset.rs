@@ -122,15 +122,20 @@ impl Region {
             shapes.push(shape.iter().map(|ring| moved_ring(ring, by)).collect::<Option<Shape>>()?);
         }
         let moved = Region::from_shapes(shapes);
-        let contours: Vec<Contour> = moved.contours().cloned().collect();
+        moved.is_simple().then_some(moved)
+    }
+
+    /// Whether no two rings cross, touch or overlap and none crosses itself.
+    #[must_use]
+    pub fn is_simple(&self) -> bool {
+        let contours: Vec<Contour> = self.contours().cloned().collect();
         let united = Region::from_contours(&contours, Fill::NonZero);
-        let same_rings =
-            united.contours().count() == contours.len() && united.shapes().len() == self.shapes().len();
         let perimeter: f64 = contours.iter().map(|ring| length(ring)).sum();
         // Rings that cross change the area by far more than rounding of corners can: one step times the outline.
-        let same_area =
-            (united.area() - contours.iter().map(|ring| signed_area(ring)).sum::<f64>()).abs() <= perimeter;
-        (same_rings && same_area).then_some(moved)
+        let same_area = (united.area() - self.area()).abs() <= perimeter;
+        same_area
+            && united.contours().count() == contours.len()
+            && united.shapes().len() == self.shapes().len()
     }
 }
 

@@ -37,6 +37,8 @@ pub(crate) fn etched(
 ) -> Vec<Metal> {
     let mut metals: Vec<Metal> = Vec::new();
     let mut biased = vec![false; stackup.layers.len()];
+    // Walls that widen away from the artwork's face close gaps as well, grid steps.
+    let widening: Vec<i64> = stackup.iter().map(|(id, _)| widening(stackup, id, artwork.grid)).collect();
     for copper in &artwork.copper {
         let bias = match &stackup.get(copper.layer).kind {
             LayerKind::Conductor { etch_bias, .. } => artwork.grid.snap(*etch_bias).unwrap_or(0),
@@ -55,22 +57,36 @@ pub(crate) fn etched(
         }
     }
     for (k, metal) in metals.iter().enumerate() {
-        if !biased[metal.layer.idx()] {
+        let growth = widening[metal.layer.idx()];
+        if !biased[metal.layer.idx()] && growth == 0 {
             continue;
         }
+        let cause = if growth > 0 { "walls that widen" } else { "etch bias" };
+        let wide = metal.wide.offset(growth);
         for other in metals[k + 1..].iter().filter(|other| other.layer == metal.layer) {
-            if let Some(at) = overlap(&metal.wide, &other.wide) {
+            if let Some(at) = overlap(&wide, &other.wide.offset(growth)) {
                 errors.push(short(
                     artwork,
                     stackup,
                     (metal.net, other.net),
                     (metal.layer, at, metal.origin),
-                    "etch bias",
+                    cause,
                 ));
             }
         }
     }
     metals
+}
+
+fn widening(stackup: &Stackup, layer: LayerId, grid: Grid) -> i64 {
+    let inset = lean(stackup, layer, grid).map_or(0.0, |lean| lean.inset);
+    #[expect(
+        clippy::cast_possible_truncation,
+        reason = "an inset is at most a few thousand steps per micrometre"
+    )]
+    {
+        (-inset).max(0.0).round() as i64
+    }
 }
 
 /// A warning for each piece of `copper` that an inward `bias` removes or breaks up.
@@ -224,7 +240,16 @@ pub(crate) fn leaning(
         foot.push(mean.clone());
         top.push(mean);
     }
-    (Region::gathered(&foot), Region::gathered(&top))
+    let (foot, top) = (Region::gathered(&foot), Region::gathered(&top));
+    if foot.is_simple() && top.is_simple() {
+        return (foot, top);
+    }
+    // Pieces of one net that widen may run into each other.
+    let text =
+        format!("leaning walls of {what} run into each other; they are upright at the mean width instead");
+    warnings.push(Warning::new(text, metal.origin));
+    let mean = mean_outline(&metal.wide, lean);
+    (mean.clone(), mean)
 }
 
 /// Upright outline half way between the wide and the narrow face.

@@ -95,7 +95,7 @@ pub(crate) fn window(
 }
 
 /// Three times the largest height from a layer of `nets` to the nearest other conductor layer; with one conductor
-/// layer only, three times the height of the finite stack, and at least three times the copper's thickness.
+/// layer only, three times the height of the finite stack.
 fn default_margin(pile: &Pile, metals: &[Metal], nets: &[NetId]) -> f64 {
     let conductors: Vec<_> = pile.entries.iter().filter(|e| e.kind == EntryKind::Conductor).collect();
     let (lo, hi) = pile.span();

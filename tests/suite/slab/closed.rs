@@ -1,8 +1,8 @@
 //! Properties: whatever lies on whatever, surfaces close.
 
 use super::bench::{
-    Board, assert_all_closed, coating, conductor, conductor_faces, dielectric, disc, etched_conductor, metal,
-    named, open, rect,
+    Board, assert_all_closed, assert_closed, coating, conductor, conductor_faces, dielectric, disc,
+    etched_conductor, metal, named, open, rect,
 };
 use chargeskin::faces::FacesError;
 use chargeskin::job::RegionChoice;
@@ -72,8 +72,8 @@ proptest! {
         let board = board
             .barrel("top", "top", &net, disc(x + 5, y + 5, 4, 9))
             .opening("mask", rect(opening, opening, opening + 150, opening + 90));
-        // Copper that grows towards its top may close a gap there; that is a short, and refused.
-        let model = board.slabs().unwrap().value;
+        // Copper that widens may close a gap; that is a short, and refused.
+        let Ok(model) = board.slabs().map(|warned| warned.value) else { return Ok(()) };
         match chargeskin::faces::derive(&model) {
             Ok(faces) => assert_closed_to_a_step(&faces.value),
             Err(error) => assert!(slope > 90.0 || matches!(error, FacesError::NoMetal), "{error}"),
@@ -138,6 +138,6 @@ fn many_vias_close() {
     let faces = chargeskin::faces::derive(&model).unwrap().value;
     println!("{n_cells} cells in {built:?}, {} faces in {:?} altogether", faces.faces.len(), begin.elapsed());
     for net in faces.nets.iter().filter(|n| !n.cut && n.name != "GND") {
-        super::bench::assert_closed(&net.name, &super::bench::metal(&faces, &net.name), faces.faces.len());
+        assert_closed(&net.name, &metal(&faces, &net.name), faces.faces.len());
     }
 }
