@@ -3,7 +3,7 @@
 //! Growth with mitred joins is the work of `i_overlay`; the inset that keeps the corners, which leaning walls need,
 //! is made here.
 
-use crate::geom::region::{Contour, Fill, Point, Region, Shape, signed_area};
+use crate::geom::region::{Contour, Fill, Point, Region, Shape};
 use i_overlay::core::fill_rule::FillRule;
 use i_overlay::core::overlay::{IntOverlayOptions, Overlay, ShapeType};
 use i_overlay::core::overlay_rule::OverlayRule;
