@@ -34,3 +34,9 @@ pub use results::Results;
 pub use slab::SlabModel;
 pub use solve::Charge;
 pub use system::System;
+
+/// The snippets of the README, as tests.
+#[cfg(doctest)]
+#[doc = include_str!("../README.md")]
+#[derive(Debug)]
+pub struct Readme;

@@ -1,5 +1,5 @@
 //! The `chargeskin` command: words in, exit code out.
 
 fn main() -> std::process::ExitCode {
-    std::process::ExitCode::SUCCESS
+    chargeskin::cli::main()
 }

@@ -7,6 +7,7 @@ mod artwork;
 mod closed_forms;
 mod identities;
 mod job;
+mod main_job;
 mod mesh;
 mod oracles;
 mod slab;

@@ -120,6 +120,42 @@ fn rooms_use_only_what_the_order_allows() {
     assert!(breaches.is_empty(), "{}", breaches.join("\n"));
 }
 
+/// Every `code(...)` of a diagnostic under src.
+fn error_codes() -> BTreeSet<String> {
+    let mut codes = BTreeSet::new();
+    for (_, text) in files("src", ".rs") {
+        for line in code_lines(&text) {
+            for rest in line.split("code(").skip(1) {
+                let code: String = rest
+                    .trim_start_matches('"')
+                    .chars()
+                    .take_while(|c| c.is_ascii_alphanumeric() || matches!(c, '_' | ':'))
+                    .collect();
+                if code.contains("::") {
+                    codes.insert(code);
+                }
+            }
+        }
+    }
+    codes
+}
+
+#[test]
+fn every_error_code_has_its_section() {
+    let codes = error_codes();
+    assert!(codes.contains("report::json"), "the codes were not found");
+    let page = std::fs::read_to_string(root().join("docs/errors.md")).unwrap();
+    let sections: BTreeSet<String> = page
+        .lines()
+        .filter_map(|line| line.strip_prefix("### "))
+        .map(|code| code.trim().replace('`', ""))
+        .collect();
+    let missing: Vec<_> = codes.difference(&sections).collect();
+    let stale: Vec<_> = sections.difference(&codes).collect();
+    assert!(missing.is_empty(), "docs/errors.md lacks {missing:?}");
+    assert!(stale.is_empty(), "docs/errors.md describes what no code raises: {stale:?}");
+}
+
 /// Words such as Author1984 or Author1984b.
 fn reference_keys(text: &str) -> BTreeSet<String> {
     text.split(|c: char| !c.is_ascii_alphanumeric())
