@@ -97,7 +97,7 @@ mod tests {
 
     /// What: the sum of a row net's neighbours is its self capacitance, as Gauss's law has it.
     /// Derived: what is not on a net is on the rest of the reference, which closes the sum.
-    /// Tolerance: one rounding per net, 1e-15 of the self capacitance.  Seen to fail with: the rest's sign turned.
+    /// Tolerance: one rounding per net, 1e-15 of the self capacitance.  Not yet seen to fail.
     #[test]
     fn neighbours_sum_to_the_self_capacitance() {
         let x = sample::extraction();
@@ -109,7 +109,7 @@ mod tests {
 
     /// What: the circuit has the self capacitances of the matrix, lumped couplings included, and no negative element.
     /// Derived: what leaves a pair goes from each of its nodes to the reference.
-    /// Tolerance: nine printed digits.  Seen to fail with: lumped couplings dropped.
+    /// Tolerance: nine printed digits.  Not yet seen to fail.
     #[test]
     fn the_circuit_keeps_self_capacitances() {
         let mut x = sample::extraction();
