@@ -6,7 +6,7 @@
 //! The first term is what a sequence that converges like 1/N has left. On graded meshes the measured rate is near
 //! N^-1.5 (`docs/formulation.md`, "Error bars"), for which the true rest is about 0.55 of it at N ratio 2: the bar is
 //! meant to be 1 to 4 times the error. Two guards catch a difference that is small by accident: a quarter of what the
-//! level before predicts, and a tenth of the geometric mean of the two diagonal bars.
+//! level before predicts, and a quarter of the relative bar that the two diagonal entries have.
 
 use crate::extract::{Accuracy, Bars};
 use crate::results::Results;
@@ -14,8 +14,8 @@ use faer::Mat;
 
 /// Part of the previous level's prediction that a bar never falls below.
 const PREVIOUS_SHARE: f64 = 0.25;
-/// Part of the diagonal bars' geometric mean that an off-diagonal bar never falls below.
-const DIAGONAL_SHARE: f64 = 0.1;
+/// Part of the diagonal bars, relative to their entries, that another bar of their rows never falls below.
+const DIAGONAL_SHARE: f64 = 0.25;
 /// The border of the extent is moved in by this factor to see what truncation does.
 pub(crate) const BORDER_MOVE: f64 = 1.5;
 
@@ -48,13 +48,11 @@ pub(crate) fn bars(steps: &[Step<'_>], moved: Moved<'_>, other: OtherParts) -> B
         let defect = (fine.maxwell[(i, j)] - fine.maxwell[(j, i)]).abs();
         bar(&|r| r.maxwell[(i, j)], true).max(defect)
     });
+    let relative: Vec<f64> = (0..n_rows).map(|i| (maxwell[(i, i)] / fine.maxwell[(i, i)]).abs()).collect();
     for i in 0..n_rows {
         for j in 0..n_rows {
-            if i != j {
-                let floor = DIAGONAL_SHARE * (maxwell[(i, i)] * maxwell[(j, j)]).sqrt();
-                let floor = floor.min(fine.maxwell[(i, j)].abs());
-                maxwell[(i, j)] = maxwell[(i, j)].max(floor);
-            }
+            let floor = DIAGONAL_SHARE * (relative[i] * relative[j]).sqrt() * fine.maxwell[(i, j)].abs();
+            maxwell[(i, j)] = maxwell[(i, j)].max(floor);
         }
     }
     Bars {

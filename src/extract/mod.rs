@@ -1,5 +1,6 @@
 //! The loop: [`SlabModel`](crate::slab::SlabModel) to [`Extraction`], mesh after mesh until each error bar fits.
 
+mod chord;
 mod error;
 mod error_bar;
 mod level;
@@ -56,7 +57,8 @@ pub fn extract(
     let mut warnings = Vec::new();
     let faces = crate::faces::derive(model)?.drain(&mut warnings);
     let faces_seconds = started.elapsed().as_secs_f64();
-    let refined = refine(&faces, job.accuracy, options, &mut warnings, progress)?;
+    let options = ExtractOptions { chord_share: options.chord_share + chord::share(model), ..*options };
+    let refined = refine(&faces, job.accuracy, &options, &mut warnings, progress)?;
     let mut seconds = vec![("faces".to_owned(), faces_seconds)];
     seconds.extend(refined.seconds);
     Ok(Extraction {

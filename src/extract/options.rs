@@ -16,7 +16,7 @@ const FLOPS_PER_CORE: f64 = 4e10;
 /// Limits and starting point of an extraction.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct ExtractOptions {
-    /// Density of the coarsest mesh: panels from an edge to the middle of its face. Default 2.
+    /// Density of the coarsest mesh: panels from an edge to the middle of its face. Default 1.2.
     pub density: f64,
     /// Most panels of one mesh. Default 20 000.
     pub max_panels: usize,
@@ -31,7 +31,7 @@ pub struct ExtractOptions {
 impl Default for ExtractOptions {
     fn default() -> Self {
         ExtractOptions {
-            density: 2.0,
+            density: 1.2,
             max_panels: 20_000,
             max_memory: 8_000_000_000,
             threads: 1,

@@ -15,8 +15,8 @@ use crate::solve::SolveInfo;
 const DENSITY_RATIO: f64 = std::f64::consts::SQRT_2;
 /// A level must have at least this many times the panels of the one before to say anything about convergence.
 const LEAST_GROWTH: f64 = 1.3;
-/// Densities tried for one level before the faces are taken to be as fine as they get.
-const MOST_TRIES: usize = 12;
+/// Densities tried for one level before the faces are taken to be as fine as grading makes them.
+const MOST_TRIES: usize = 4;
 
 /// The finest level of a sequence, with its bars.
 #[derive(Debug, Clone)]
@@ -35,7 +35,7 @@ pub struct Refinement {
     pub seconds: Vec<(String, f64)>,
 }
 
-/// Solves faces level after level until the bars fit `accuracy` or no finer mesh fits `options`. What stopped it
+/// Solves faces level after level until the bars fit `accuracy` and the physical checks hold, or no finer mesh fits `options`. What stopped it
 /// is appended to `warnings`.
 ///
 /// # Errors
@@ -59,8 +59,13 @@ pub fn refine(
     if coarsest > allowed {
         return Err(too_large());
     }
-    let mut levels = vec![level::solve(&mesh, 1, progress)?];
-    let inner = inner_part(&mesh).map(|inner| level::solve(&inner, 1, progress)).transpose()?;
+    let solved = |mesh: &Mesh, number| {
+        let mut level = level::solve(mesh, number, progress)?;
+        level.allow(accuracy);
+        Ok::<Level, ExtractError>(level)
+    };
+    let mut levels = vec![solved(&mesh, 1)?];
+    let inner = inner_part(&mesh).map(|inner| solved(&inner, 1)).transpose()?;
     let bars = |levels: &[Level]| {
         let steps: Vec<Step<'_>> = levels.iter().map(|level| (&level.results, level.count.panels)).collect();
         let moved = inner.as_ref().map(|inner| (&levels[0].results, &inner.results));
@@ -69,9 +74,9 @@ pub fn refine(
     };
     let mut stopped_by = None;
     loop {
-        if levels.len() >= 2
-            && levels.last().is_some_and(|fine| error_bar::meets(&fine.results, &bars(&levels), accuracy))
-        {
+        let good =
+            |fine: &Level| fine.checks_hold() && error_bar::meets(&fine.results, &bars(&levels), accuracy);
+        if levels.len() >= 2 && levels.last().is_some_and(good) {
             break;
         }
         let before = (mesh.panels.len(), levels.len());
@@ -80,7 +85,7 @@ pub fn refine(
             break;
         };
         mesh = finer;
-        levels.push(level::solve(&mesh, levels.len() + 1, progress)?);
+        levels.push(solved(&mesh, levels.len() + 1)?);
     }
     if levels.len() < 2 {
         return Err(too_large());
@@ -114,18 +119,26 @@ fn finer(
     density: &mut f64,
     options: &ExtractOptions,
 ) -> Result<Option<Mesh>, ExtractError> {
-    for _ in 0..MOST_TRIES {
-        *density *= DENSITY_RATIO;
-        let mesh = match level::panelize(faces, *density, (level, options.most_panels()), &mut Vec::new()) {
-            Err(ExtractError::Mesh(crate::mesh::MeshError::TooMany { .. })) => return Ok(None),
-            other => other?,
-        };
-        if mesh.panels.len() > options.panels_that_fit() {
-            return Ok(None);
-        }
-        #[expect(clippy::cast_precision_loss, reason = "panel counts are far below 2^53")]
-        if mesh.panels.len() as f64 >= LEAST_GROWTH * n_panels as f64 {
-            return Ok(Some(mesh));
+    let fits = |mesh: &Mesh| mesh.panels.len() <= options.panels_that_fit();
+    #[expect(clippy::cast_precision_loss, reason = "panel counts are far below 2^53")]
+    let grown = |mesh: &Mesh| mesh.panels.len() as f64 >= LEAST_GROWTH * n_panels as f64;
+    // A model of smooth faces only has nothing that grading could refine.
+    for halvings in [0, level] {
+        let mut tried = *density;
+        for _ in 0..MOST_TRIES {
+            tried *= DENSITY_RATIO;
+            let mesh = match level::panelize(faces, tried, (halvings, options.most_panels()), &mut Vec::new())
+            {
+                Err(ExtractError::Mesh(crate::mesh::MeshError::TooMany { .. })) => return Ok(None),
+                other => other?,
+            };
+            if !fits(&mesh) {
+                return Ok(None);
+            }
+            if grown(&mesh) {
+                *density = tried;
+                return Ok(Some(mesh));
+            }
         }
     }
     Ok(None)

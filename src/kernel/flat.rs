@@ -3,7 +3,7 @@
 //! A system meets each panel as often as there are panels, so what depends on one panel alone is worked out once.
 
 use crate::geom::{PanelShape, Vec3};
-use crate::kernel::quadrature::{GAUSS_2, GAUSS_3, GaussRule};
+use crate::kernel::quadrature::{GAUSS_2, GAUSS_3, GAUSS_4, GaussRule};
 
 /// A panel, ready for integration.
 #[derive(Debug, Clone)]
@@ -34,6 +34,8 @@ pub struct Flat {
     pub coarse: Points<4>,
     /// Three points per direction.
     pub fine: Points<9>,
+    /// Four points per direction.
+    pub finest: Points<16>,
 }
 
 /// Quadrature points of a panel, as a structure of arrays; the weights sum to 1.
@@ -91,6 +93,7 @@ impl Flat {
             variance: [m[(0, 0)], m[(1, 1)], m[(2, 2)], m[(0, 1)], m[(0, 2)], m[(1, 2)]],
             coarse: points(&corners, u, v, &GAUSS_2),
             fine: points(&corners, u, v, &GAUSS_3),
+            finest: points(&corners, u, v, &GAUSS_4),
         }
     }
 

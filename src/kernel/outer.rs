@@ -19,10 +19,10 @@ pub struct Effort {
 }
 
 impl Effort {
-    /// ρ^(-2n) of about 2e-6; for the potential, whose singularities at edges are weak (d ln d).
-    pub const POTENTIAL: Effort = Effort { largest_q: [0.0028, 0.06, 0.21, 0.38, 0.57, 0.75], halvings: 6 };
-    /// ρ^(-2n) of about 2e-6; for the solid angle, whose errors the row of a dense dielectric magnifies.
-    pub const FLUX: Effort = Effort { largest_q: [0.0015, 0.06, 0.2, 0.37, 0.56, 0.75], halvings: 7 };
+    /// ρ^(-2n) of about 2e-5; for the potential, whose singularities at edges are weak (d ln d).
+    pub const POTENTIAL: Effort = Effort { largest_q: [0.008, 0.12, 0.31, 0.52, 0.73, 0.9], halvings: 5 };
+    /// ρ^(-2n) of about 1e-5; for the solid angle, whose errors the row of a dense dielectric magnifies.
+    pub const FLUX: Effort = Effort { largest_q: [0.005, 0.1, 0.28, 0.48, 0.68, 0.86], halvings: 6 };
     /// ρ^(-2n) of about 1e-9; the measure for the other two.
     pub const REFERENCE: Effort = Effort { largest_q: [1e-5, 0.005, 0.04, 0.12, 0.24, 0.37], halvings: 11 };
 }

@@ -1,5 +1,7 @@
 //! The two entries of a pair of panels: the only place where rules are chosen and put to use.
 
+use std::borrow::Cow;
+
 use crate::geom::Vec3;
 use crate::kernel::flat::{Flat, Points};
 use crate::kernel::outer::{self, Effort};
@@ -20,7 +22,7 @@ const COPLANAR: f64 = 1e-9;
 /// Returns V per C/m². `A_test P(test, source)` over the area of the source is symmetric to the accuracy of the rules.
 ///
 /// # Accuracy
-/// Relative error at most 1e-6, 1e-8 for panels in one plane; see [`regime`](mod@crate::kernel::regime).
+/// Relative error at most 1e-5, 1e-8 for near panels in one plane; see [`regime`](mod@crate::kernel::regime).
 #[must_use]
 #[inline]
 pub fn potential(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
@@ -29,7 +31,8 @@ pub fn potential(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
         Regime::Far => moment::inverse_distance(test, source, r),
         Regime::Coarse => product_inverse(&test.coarse, &source.coarse, r),
         Regime::Fine => product_inverse(&test.fine, &source.fine, r),
-        Regime::Near => near_inverse(test, &source.displaced(shift)),
+        Regime::Finest => product_inverse(&test.finest, &source.finest, r),
+        Regime::Near => near_inverse(test, &at_its_place(source, shift)),
     };
     COULOMB * source.area * mean
 }
@@ -57,27 +60,43 @@ fn near_inverse(test: &Flat, source: &Flat) -> f64 {
 /// Returns V/m per C/m².
 ///
 /// # Accuracy
-/// Error at most 4e-6 of the largest entry at that distance, 1 / (4 π ε₀ d²) times the area; see [`regime`](mod@crate::kernel::regime).
+/// Error at most 2e-5 of the largest entry at that distance, 1 / (4 π ε₀ d²) times the area; see [`regime`](mod@crate::kernel::regime).
 #[must_use]
 #[inline]
 pub fn flux(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
     let r = test.centroid - source.centroid - shift;
+    if in_one_plane(test, source, r) {
+        return 0.0;
+    }
     let mean = match regime(test, source, r, &regime::FLUX) {
         Regime::Far => moment::flux(test, source, r),
         Regime::Coarse => product_flux(&test.coarse, &source.coarse, r, test.normal),
         Regime::Fine => product_flux(&test.fine, &source.fine, r, test.normal),
-        Regime::Near => near_flux(test, &source.displaced(shift)),
+        Regime::Finest => product_flux(&test.finest, &source.finest, r, test.normal),
+        Regime::Near => near_flux(test, &at_its_place(source, shift)),
     };
     COULOMB * source.area * mean
 }
 
 /// Mean of n.r/r³ over both panels when they are near each other.
 fn near_flux(test: &Flat, source: &Flat) -> f64 {
-    let plane = |k: usize| test.local(source.global(source.corners[k][0], source.corners[k][1]))[2].abs();
-    if (0..source.n_corners).all(|k| plane(k) <= COPLANAR * (test.radius + source.radius)) {
-        return 0.0;
-    }
     -outer::mean(source, test, &Effort::FLUX, |at| flux::solid_angle(test, at)) / test.area
+}
+
+/// Whether the source, whose centroid lies `r` before that of the test panel, lies in the plane of the test panel.
+#[inline]
+fn in_one_plane(test: &Flat, source: &Flat, r: Vec3) -> bool {
+    let slack = COPLANAR * (test.radius + source.radius);
+    if r.dot(&test.normal).abs() > slack {
+        return false;
+    }
+    let height = |c: &[f64; 2]| (r - source.u * c[0] - source.v * c[1]).dot(&test.normal).abs();
+    source.corners[..source.n_corners].iter().all(|c| height(c) <= slack)
+}
+
+/// The source displaced by `shift`; itself where there is nothing to displace.
+fn at_its_place(source: &Flat, shift: Vec3) -> Cow<'_, Flat> {
+    if shift == Vec3::zeros() { Cow::Borrowed(source) } else { Cow::Owned(source.displaced(shift)) }
 }
 
 /// Mean of 1/r over the points of both panels, whose centroids differ by `r`.

@@ -11,6 +11,8 @@ use crate::kernel::flat::Flat;
 pub enum Regime {
     /// Closed form over one panel, graded Gauss rule or closed form over the other: touching and near pairs.
     Near,
+    /// Four by four points on each panel.
+    Finest,
     /// Three by three points on each panel.
     Fine,
     /// Two by two points on each panel.
@@ -19,20 +21,21 @@ pub enum Regime {
     Far,
 }
 
-/// Largest x² of the three cheap regimes.
+/// Largest x² of the four cheap regimes.
 #[derive(Debug, Clone, Copy)]
 pub struct Limits {
+    finest: f64,
     fine: f64,
     coarse: f64,
     far: f64,
 }
 
-/// Limits for the potential: relative error at most 1e-6, measured over squares, triangles, trapezoids and rectangles
+/// Limits for the potential: relative error at most 1e-5, measured over squares, triangles, trapezoids and rectangles
 /// of aspect 10, in size ratios up to 3 and all orientations (`oracles::regimes_meet_their_limits`).
-pub const POTENTIAL: Limits = Limits { fine: 0.04, coarse: 0.0015, far: 0.0006 };
+pub const POTENTIAL: Limits = Limits { finest: 0.2, fine: 0.08, coarse: 0.007, far: 0.003 };
 
-/// Limits for the flux: error at most 4e-6 of A / (4 π ε₀ d²), which a face-to-face pair would have; over the same shapes.
-pub const FLUX: Limits = Limits { fine: 0.025, coarse: 0.001, far: 0.0004 };
+/// Limits for the flux: error at most 2e-5 of A / (4 π ε₀ d²), which a face-to-face pair would have; over the same shapes.
+pub const FLUX: Limits = Limits { finest: 0.15, fine: 0.06, coarse: 0.005, far: 0.002 };
 
 /// The regime of a pair whose centroids differ by `r`, m.
 #[must_use]
@@ -46,6 +49,8 @@ pub fn regime(test: &Flat, source: &Flat, r: Vec3, limits: &Limits) -> Regime {
         Regime::Coarse
     } else if size2 < limits.fine * d2 {
         Regime::Fine
+    } else if size2 < limits.finest * d2 {
+        Regime::Finest
     } else {
         Regime::Near
     }

@@ -45,6 +45,9 @@ pub(super) struct Nearby {
     foreign: Vec<u32>,
 }
 
+/// An interface nearer to an edge than 1 / `FILM` of the edge's feature size is graded less. Measured on a plate over a
+/// film of 1/80 of its half width, er 7.5: with 10 the error at a given number of panels is half of that with 1.
+const FILM: f64 = 10.0;
 /// Points at which a line is probed, less one.
 const STEPS: usize = 8;
 /// Edges that ask for less than this many panels across a panel are left out for its parts.
@@ -238,7 +241,7 @@ impl GradedEdge {
         let nearest = self.start + on_edge * self.along;
         let s0 = (nearest - from).dot(&along);
         let gap = (nearest - from - s0 * along).norm().max(1e-9 * self.feature);
-        let near = if at_full { 1.0 } else { (gap / self.feature).powf(1.0 / self.power).min(1.0) };
+        let near = if at_full { 1.0 } else { (FILM * gap / self.feature).powf(1.0 / self.power).min(1.0) };
         let weight = near * (self.fades / gap).min(1.0);
         let upto = |i: usize| (sine * (fraction(i) * length - s0) / gap).asinh();
         let mut asked = [0.0; STEPS];

@@ -4,12 +4,15 @@
 #![expect(clippy::print_stdout, reason = "a test that skips says so")]
 
 mod artwork;
+mod bodies;
 mod closed_forms;
 mod identities;
 mod job;
 mod main_job;
 mod mesh;
 mod oracles;
+mod pipeline;
+mod references;
 mod slab;
 mod solids;
 mod tidy;
