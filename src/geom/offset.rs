@@ -3,7 +3,7 @@
 //! Growth with mitred joins is the work of `i_overlay`; the inset that keeps the corners, which leaning walls need,
 //! is made here.
 
-use crate::geom::region::{Contour, Fill, Point, Region, Shape};
+use crate::geom::region::{Bounds, Contour, Fill, Point, Region, Shape};
 use i_overlay::core::fill_rule::FillRule;
 use i_overlay::core::overlay::{IntOverlayOptions, Overlay, ShapeType};
 use i_overlay::core::overlay_rule::OverlayRule;
@@ -73,6 +73,28 @@ impl Region {
     #[must_use]
     pub fn gathered(regions: &[Region]) -> Region {
         Region::from_shapes(regions.iter().flat_map(|region| region.shapes().iter().cloned()).collect())
+    }
+
+    /// The region with those holes filled whose bounds do not meet `frame`.
+    #[must_use]
+    pub fn with_far_holes_filled(&self, frame: &Bounds) -> Region {
+        let near = |ring: &Contour| {
+            let ring = Region::from_shapes(vec![vec![ring.clone()]]);
+            ring.bounds().is_some_and(|bounds| bounds.meets(frame))
+        };
+        let kept = |shape: &Shape| {
+            let rings = shape.iter().enumerate().filter(|(k, ring)| *k == 0 || near(ring));
+            rings.map(|(_, ring)| ring.clone()).collect()
+        };
+        Region::from_shapes(self.shapes().iter().map(kept).collect())
+    }
+
+    /// The pieces whose bounds meet `frame`.
+    #[must_use]
+    pub fn pieces_meeting(&self, frame: &Bounds) -> Region {
+        let meets = |piece: &Region| piece.bounds().is_some_and(|bounds| bounds.meets(frame));
+        let pieces: Vec<Region> = self.pieces().into_iter().filter(meets).collect();
+        Region::gathered(&pieces)
     }
 
     /// The region a fraction `t` of the way, corner by corner, to `other`, which must have the same rings.

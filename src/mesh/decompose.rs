@@ -1,16 +1,20 @@
 //! A face with holes to convex triangles and quadrilaterals.
 //!
 //! Re-entrant corners are cut away first (`cuts`), then the convex pieces are cut into strips (`convex`). A face that
-//! is a convex triangle or quadrilateral comes back as it is, bit for bit.
+//! is a convex triangle or quadrilateral comes back as it is, bit for bit. Faces with very many corners, and those that
+//! `cuts` cannot manage, are triangulated (`delaunay`).
 
 use crate::faces::Face;
 use crate::geom::Vec3;
-use crate::mesh::outline::{Outline, area_of};
-use crate::mesh::{FaceProblem, MeshError, convex, cuts};
+use crate::mesh::outline::{Corner, Outline, area_of};
+use crate::mesh::{FaceProblem, MeshError, convex, cuts, delaunay};
 use rayon::prelude::*;
 
 /// Pieces may miss or double this part of a face, relative: rounding of cut points along the longest edges.
 const AREA_TOLERANCE: f64 = 1e-9;
+
+/// Faces with more corners are triangulated at once: the search for cuts takes seconds there.
+const MANY_CORNERS: usize = 400;
 
 /// A convex part of a face.
 #[derive(Debug, Clone, PartialEq)]
@@ -43,17 +47,22 @@ pub fn decompose_all(faces: &[Face]) -> Result<Vec<Piece>, MeshError> {
 pub fn decompose(face: &Face, id: u32) -> Result<Vec<Piece>, FaceProblem> {
     let outline = Outline::new(face)?;
     let crossing = |pieces| FaceProblem::Crossing { pieces, area: outline.area };
-    let rings = cuts::convex_rings(&outline).ok_or(crossing(0.0))?;
-    let flat: Vec<_> = rings
-        .iter()
-        .filter(|ring| ring.len() >= 3)
-        .flat_map(|ring| convex::strips(ring))
-        .filter(|piece| area_of(piece) > 0.0)
-        .collect();
-    let covered: f64 = flat.iter().map(|piece| area_of(piece)).sum();
-    if (covered - outline.area).abs() > AREA_TOLERANCE * outline.area {
-        return Err(crossing(covered));
-    }
+    let n_corners: usize = outline.rings.iter().map(Vec::len).sum();
+    let covered = |flat: &[Vec<Corner>]| flat.iter().map(|piece| area_of(piece)).sum::<f64>();
+    let covers =
+        |flat: &Vec<Vec<Corner>>| (covered(flat) - outline.area).abs() <= AREA_TOLERANCE * outline.area;
+    let cut = if n_corners <= MANY_CORNERS { cut(&outline).filter(covers) } else { None };
+    let flat = match cut {
+        Some(flat) => flat,
+        None => {
+            let mut flat = delaunay::pieces(&outline).ok_or(crossing(0.0))?;
+            flat.retain(|piece| area_of(piece) > 0.0);
+            if !covers(&flat) {
+                return Err(crossing(covered(&flat)));
+            }
+            flat
+        }
+    };
     Ok(flat
         .iter()
         .map(|piece| Piece {
@@ -62,4 +71,11 @@ pub fn decompose(face: &Face, id: u32) -> Result<Vec<Piece>, FaceProblem> {
             face: id,
         })
         .collect())
+}
+
+/// Strips of the convex rings that cuts from re-entrant corners leave; `None` when the cuts do not come out.
+fn cut(outline: &Outline) -> Option<Vec<Vec<Corner>>> {
+    let rings = cuts::convex_rings(outline)?;
+    let strips = rings.iter().filter(|ring| ring.len() >= 3).flat_map(|ring| convex::strips(ring));
+    Some(strips.filter(|piece| area_of(piece) > 0.0).collect())
 }

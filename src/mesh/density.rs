@@ -4,10 +4,10 @@
 //! s(x) = n (x/L)^(1/b) grows along it; beyond L panels grow in proportion to x, and beyond X to x². Only distance counts that is gained
 //! square to the edge: along it panels may be long. See `docs/formulation.md`, "Grading".
 
-use crate::faces::{EdgeGrade, Face, FaceKind};
+use crate::faces::{EdgeGrade, Face, FaceKind, Faces};
 use crate::geom::Vec3;
 use crate::mesh::edge_tree::EdgeTree;
-use crate::net::NetId;
+use crate::net::{NetId, Role};
 use std::collections::BTreeMap;
 
 /// Every graded edge, sorted by face, and the density.
@@ -20,6 +20,8 @@ pub(super) struct Density {
     foreign: EdgeTree,
     nets: Vec<Option<NetId>>,
     n: f64,
+    /// Boxes around the faces of row nets, m; empty when every net has a row.
+    rows: Vec<[Vec3; 2]>,
 }
 
 /// An edge at which charge crowds.
@@ -64,7 +66,8 @@ pub(super) struct Demand {
 
 impl Density {
     /// Edges of `faces` at density `n`.
-    pub(super) fn new(faces: &[Face], n: f64) -> Density {
+    pub(super) fn new(all: &Faces, n: f64) -> Density {
+        let faces = all.faces.as_slice();
         let mut edges = Vec::new();
         let mut ranges = Vec::with_capacity(faces.len());
         for (face, id) in faces.iter().zip(0u32..) {
@@ -83,7 +86,14 @@ impl Density {
         let own = ranges.into_iter().map(|range| tree(range.collect())).collect();
         let foreign = tree(foreign);
         let nets = faces.iter().map(net_of).collect();
-        Density { edges, own, foreign, nets, n }
+        Density { edges, own, foreign, nets, n, rows: row_boxes(all) }
+    }
+
+    /// Whether a panel inside the sphere is so small for its distance from every row net that it need not be
+    /// cut, whatever edges are near it: its diameter is at most 1/n of that distance.
+    pub(super) fn is_remote(&self, centre: Vec3, radius: f64) -> bool {
+        let distance = |[lo, hi]: &[Vec3; 2]| (lo - centre).sup(&(centre - hi)).sup(&Vec3::zeros()).norm();
+        !self.rows.is_empty() && self.rows.iter().all(|row| 2.0 * radius * self.n <= distance(row) - radius)
     }
 
     /// Edges that bear on a panel of `face` inside the sphere.
@@ -258,6 +268,22 @@ impl GradedEdge {
 /// Position of probe `i` along its line.
 fn fraction(i: usize) -> f64 {
     i as f64 / STEPS as f64
+}
+
+/// Boxes around the faces of row nets; none when every conductor face belongs to one.
+fn row_boxes(all: &Faces) -> Vec<[Vec3; 2]> {
+    let is_row = |net: NetId| all.nets.get(net.idx()).is_some_and(|net| net.role == Role::Row);
+    if all.faces.iter().filter_map(net_of).all(is_row) {
+        return Vec::new();
+    }
+    let of_rows = all.faces.iter().filter(|face| net_of(face).is_some_and(is_row));
+    of_rows
+        .map(|face| {
+            let points = || face.rings.iter().flat_map(|ring| &ring.points);
+            let lo = points().fold(Vec3::repeat(f64::INFINITY), |m, p| m.inf(p));
+            [lo, points().fold(Vec3::repeat(f64::NEG_INFINITY), |m, p| m.sup(p))]
+        })
+        .collect()
 }
 
 fn index(k: usize) -> u32 {

@@ -79,6 +79,12 @@ fn walk(piece: &Piece, density: &Density, mut leaf: impl FnMut(&Patch) -> bool) 
     let mut open = vec![(whole, density.nearby(piece.face, centre, radius), 0)];
     while let Some((patch, above, depth)) = open.pop() {
         let (centre, radius) = patch.sphere();
+        if density.is_remote(centre, radius) {
+            if !leaf(&patch) {
+                return;
+            }
+            continue;
+        }
         let nearby = density.narrow(&above, centre, radius);
         match patch.cut(density, &nearby, piece.face).filter(|_| depth < DEEPEST) {
             Some([first, second]) => {

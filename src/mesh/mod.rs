@@ -7,6 +7,7 @@
 mod convex;
 mod cuts;
 pub mod decompose;
+mod delaunay;
 mod density;
 mod edge_tree;
 pub mod error;
@@ -58,7 +59,7 @@ pub fn panelize(faces: &Faces, options: &MeshOptions) -> Result<Warned<Mesh>, Me
         return Err(MeshError::BadDensity { found: options.density, lo, hi });
     }
     let pieces = decompose::decompose_all(&faces.faces)?;
-    let density = Density::new(&faces.faces, options.density);
+    let density = Density::new(faces, options.density);
     let counter = Counter::new(options.max_panels);
     let shapes: Vec<_> = pieces.par_iter().map(|piece| grade::refine(piece, &density, &counter)).collect();
     counter.check()?;
@@ -92,7 +93,7 @@ pub fn estimate(faces: &Faces, options: &MeshOptions) -> Result<usize, MeshError
         return Err(MeshError::BadDensity { found: options.density, lo, hi });
     }
     let pieces: Vec<Piece> = decompose::decompose_all(&faces.faces)?;
-    let density = Density::new(&faces.faces, options.density);
+    let density = Density::new(faces, options.density);
     Ok(pieces.par_iter().map(|piece| grade::count(piece, &density)).sum())
 }
 

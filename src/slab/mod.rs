@@ -77,7 +77,8 @@ pub fn build(
     }
     let base = modelled_bounds(artwork, job, window);
     let frames = (base, window);
-    let extent = region_choice::extent(artwork, frames, highest - lowest, bounded, options, &mut errors);
+    let height = if bounded { highest - lowest } else { region_choice::near_height(&pile, &row_layers) };
+    let extent = region_choice::extent(artwork, frames, height, bounded, options, &mut errors);
     let Some(extent) = extent else { return Err(SlabErrors(errors)) };
     let scene = scene((artwork, stackup, &pile), &nets, &model_id, (window, extent), coats);
     warn_of_outline(&scene, images, &metals, &mut warnings);
@@ -178,7 +179,9 @@ fn scene<'a>(
                 barrels.push(Barrel { net: Some(id), region, z_lo: to.z_lo, z_hi: from.z_hi });
             }
             Lining::Bare => {
-                let region = hole.region.intersection(&extent);
+                let frame = window.bounds();
+                let near = frame.map_or_else(Region::empty, |frame| hole.region.pieces_meeting(&frame));
+                let region = near.intersection(&extent);
                 let z_lo = through(hole.to, false).unwrap_or(to.z_lo);
                 let z_hi = through(hole.from, true).unwrap_or(from.z_hi);
                 bare.push(Barrel { net: None, region, z_lo, z_hi });

@@ -6,8 +6,9 @@ pub struct SlabOptions {
     /// How far interfaces and planes go on past the window, in heights of the finite stack, when an image ground
     /// plane bounds the model. Default 8: leaves about 1e-5 of C (docs/formulation.md, "Open interfaces").
     pub reach_heights: f64,
-    /// The same without an image plane, where the field dies away more slowly. Default 12; the reach is then also at
-    /// least the larger half-width of the window, because the far field is that of the whole window.
+    /// The same without an image plane, in heights from the row nets to the nearest other conductor layer. Default 12;
+    /// the reach is then also at least the larger half-width of the window, because the far field is that of the whole
+    /// window. What truncation leaves is measured by every extraction and is part of the bars.
     pub open_reach_heights: f64,
 }
 

@@ -62,14 +62,18 @@ const LEAN_ATTEMPTS: usize = 5;
 type Parts = Vec<(Fill, Region)>;
 
 /// `region` as far as a net with this role is modelled: rows and floating nets to the window, of ground the pieces
-/// that enter the window up to the extent.
+/// that enter the window up to the extent. What stood in holes beyond the window is not modelled, so these are filled.
 pub(crate) fn clipped(region: &Region, role: Role, window: &Region, extent: &Region) -> Region {
     if role != Role::Ground {
         return within(region, window);
     }
     let enters = |piece: &Region| !within(piece, window).is_empty();
     let pieces: Vec<Region> = region.pieces().into_iter().filter(enters).collect();
-    within(&Region::gathered(&pieces), extent)
+    let going_on = within(&Region::gathered(&pieces), extent);
+    match window.bounds() {
+        Some(frame) => going_on.with_far_holes_filled(&frame),
+        None => going_on,
+    }
 }
 
 /// `region` clipped by a rectangle, untouched when it lies inside.
@@ -256,12 +260,15 @@ impl Scene<'_> {
         }
         for (coat, copper) in self.coats.iter().zip(coated) {
             let openings = pattern_of(&self.artwork.openings, coat.layer);
+            // Openings beyond the window stand over copper that is not modelled.
+            let frame = self.window.bounds();
+            let openings = openings.zip(frame).map(|(open, frame)| open.pieces_meeting(&frame));
             let reach = match coat.at(mid, copper) {
                 Reach::Nowhere => continue,
                 Reach::Everywhere => self.extent.clone(),
                 Reach::Within(region) => within(&region, &self.extent),
             };
-            let reach = openings.map_or(reach.clone(), |open| reach.difference_keeping(open));
+            let reach = openings.map_or(reach.clone(), |open| reach.difference_keeping(&open));
             claims.take(Fill::Dielectric(coat.material), &reach);
         }
         if let (EntryKind::Dielectric, Some(own)) = (entry.kind, self.pile.material(entry.layer)) {

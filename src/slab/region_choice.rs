@@ -2,7 +2,7 @@
 
 use crate::artwork::{Artwork, Lining};
 use crate::geom::region::{Bounds, MAX_COORDINATE, Point};
-use crate::job::{Job, RegionChoice};
+use crate::job::{Job, LayerId, RegionChoice};
 use crate::net::NetId;
 use crate::slab::copper::Metal;
 use crate::slab::error::{Place, SlabError};
@@ -94,26 +94,30 @@ pub(crate) fn window(
     }
 }
 
-/// Three times the largest height from a layer of `nets` to the nearest other conductor layer; with one conductor
-/// layer only, three times the height of the finite stack.
+/// Three times the height from the layers of `nets` to other conductors.
 fn default_margin(pile: &Pile, metals: &[Metal], nets: &[NetId]) -> f64 {
+    let layers: Vec<LayerId> = metals.iter().filter(|m| nets.contains(&m.net)).map(|m| m.layer).collect();
+    MARGIN_HEIGHTS * near_height(pile, &layers)
+}
+
+/// The largest height from one of `layers` to the nearest other conductor layer, m; with one conductor layer only, the height
+/// of the finite stack.
+pub(crate) fn near_height(pile: &Pile, layers: &[LayerId]) -> f64 {
     let conductors: Vec<_> = pile.entries.iter().filter(|e| e.kind == EntryKind::Conductor).collect();
     let (lo, hi) = pile.span();
     let mut height: f64 = 0.0;
-    for entry in &conductors {
-        if !metals.iter().any(|m| m.layer == entry.layer && nets.contains(&m.net)) {
-            continue;
-        }
+    for entry in conductors.iter().filter(|entry| layers.contains(&entry.layer)) {
         let gaps = conductors
             .iter()
             .filter(|other| other.layer != entry.layer)
             .map(|other| (other.z_lo - entry.z_hi).max(entry.z_lo - other.z_hi));
         height = height.max(gaps.reduce(f64::min).unwrap_or(hi - lo));
     }
-    MARGIN_HEIGHTS * if height > 0.0 { height } else { hi - lo }
+    if height > 0.0 { height } else { hi - lo }
 }
 
-/// The extent: `base` grown by the reach that `height` (of the finite part of the model, m) asks for.
+/// The extent: `base` grown by the reach that `height` asks for: that of the finite part of the model over an image
+/// plane, else [`near_height`] of the row nets, m.
 pub(crate) fn extent(
     artwork: &Artwork,
     (base, window): (Bounds, Bounds),
