@@ -6,6 +6,8 @@
 //! edge the edge is no singularity, only its ends are; at an angle, the distance grows by 1 / sin. Pieces with q too
 //! large are halved in that direction alone, so that long thin panels need few pieces.
 
+use std::cell::Cell;
+
 use crate::kernel::flat::{Flat, bilinear};
 use crate::kernel::quadrature::gauss;
 
@@ -27,6 +29,10 @@ impl Effort {
     pub const REFERENCE: Effort = Effort { largest_q: [1e-5, 0.005, 0.04, 0.12, 0.24, 0.37], halvings: 11 };
 }
 
+/// Most halvings of one panel. Graded pieces towards an edge and its ends need a few dozen; only long thin triangles side by
+/// side want more, and what is left of their error is spread over the whole panel.
+const MOST_HALVINGS: u32 = 150;
+
 /// Mean over `outer` of `f`, a function of a point in the frame of `inner` (m) that is analytic but at its edges.
 pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) -> f64) -> f64 {
     let mut corners = [[0.0; 3]; 4];
@@ -39,6 +45,7 @@ pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) ->
         [d.dot(&outer.u), d.dot(&outer.v), d.dot(&outer.normal)]
     };
     let task = Task {
+        halved: Cell::new(0),
         corners,
         tangents: inner.tangents.map(along),
         n,
@@ -55,6 +62,8 @@ pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) ->
 }
 
 struct Task<'a, F> {
+    /// Halvings made so far.
+    halved: Cell<u32>,
     /// Corners of the inner panel in the frame of the outer one.
     corners: [[f64; 3]; 4],
     /// Its edges' directions there.
@@ -109,7 +118,8 @@ impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
         let may = [sides[0].0 > self.shortest[0], sides[1].0 > self.shortest[1]];
         let most = self.effort.largest_q[5];
         let worst = usize::from(q[1] * f64::from(u8::from(may[1])) > q[0] * f64::from(u8::from(may[0])));
-        if q[worst] > most && may[worst] {
+        if q[worst] > most && may[worst] && self.halved.get() < MOST_HALVINGS {
+            self.halved.set(self.halved.get() + 1);
             let (one, two) = halves(patch, worst);
             return self.integral(&one) + self.integral(&two);
         }
