@@ -1,7 +1,9 @@
-//! The main job through the built command: what `inspect` and `schema` print, and what is refused.
+//! The main job, end to end: the built command on our own fixtures, on broken inputs, and as the README says.
 
+use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 use std::process::Command;
+use std::sync::LazyLock;
 
 fn root() -> PathBuf {
     PathBuf::from(env!("CARGO_MANIFEST_DIR"))
@@ -28,6 +30,133 @@ fn chargeskin(words: &[&str]) -> Run {
 
 fn fixture(name: &str) -> PathBuf {
     root().join("fixtures").join(name)
+}
+
+/// What an extraction left behind.
+struct Extracted {
+    run: Run,
+    result: serde_json::Value,
+    files: Vec<String>,
+}
+
+/// Extracts a fixture, whatever the checks say of it.
+fn extract(name: &str, more: &[&str]) -> Extracted {
+    let out = tempfile::tempdir().unwrap();
+    let job = format!("fixtures/{name}/job.toml");
+    let mut words = vec!["extract", &job, "--out", out.path().to_str().unwrap()];
+    words.extend(more);
+    let run = chargeskin(&words);
+    assert!(matches!(run.code, Some(0 | 1)), "{name}: {:?}\n{}", run.code, run.stderr);
+    let text = std::fs::read_to_string(out.path().join("result.json")).unwrap();
+    let mut files: Vec<String> = std::fs::read_dir(out.path())
+        .unwrap()
+        .map(|entry| entry.unwrap().file_name().into_string().unwrap())
+        .collect();
+    files.sort();
+    Extracted { run, result: serde_json::from_str(&text).unwrap(), files }
+}
+
+/// The one run of the README's example that several tests look at.
+static OIL_PROBE: LazyLock<Extracted> = LazyLock::new(|| extract("oil-probe", &[]));
+
+fn numbers(value: &serde_json::Value) -> Vec<f64> {
+    value.as_array().unwrap().iter().map(|v| v.as_f64().unwrap()).collect()
+}
+
+/// Every key at every depth, but for those of maps whose keys are names: of nets, of stages.
+fn keys(value: &serde_json::Value, found: &mut BTreeSet<String>) {
+    match value {
+        serde_json::Value::Object(map) => {
+            for (key, inner) in map {
+                found.insert(key.clone());
+                if key != "idle_charge_C" && key != "seconds" {
+                    keys(inner, found);
+                }
+            }
+        }
+        serde_json::Value::Array(items) => items.iter().for_each(|item| keys(item, found)),
+        _ => {}
+    }
+}
+
+/// What: the four files are there; every key of `result.json` is documented; the matrix has the signs that physics
+/// asks for; a net's neighbours sum to its self capacitance; the exit code says what the checks say.
+/// Derived: free charge of the excited net is positive and of every other net negative (the maximum principle).
+/// Tolerance: an entry may have the wrong sign within its own bar; a sum agrees within the bars of what is summed.
+fn check_fixture(name: &str, found: &Extracted, rows: &[&str], reference: &[&str]) {
+    let Extracted { run, result, files } = found;
+    assert_eq!(result["format"], "chargeskin-result/1");
+    let page = std::fs::read_to_string(root().join("docs/output.md")).unwrap();
+    let mut all = BTreeSet::new();
+    keys(result, &mut all);
+    for key in &all {
+        assert!(page.contains(&format!("`{key}`")), "{name}: `{key}` is not in docs/output.md");
+    }
+    for key in ["head", "neighbours", "interfaces", "conductor_faces", "checks", "mesh", "solver", "warnings"]
+    {
+        assert!(all.contains(key), "{name}: no {key}");
+    }
+    assert_eq!(result["nets"], serde_json::json!(rows));
+    assert_eq!(result["reference"], serde_json::json!(reference));
+    for i in 0..rows.len() {
+        let (row, bars) = (numbers(&result["maxwell_F"][i]), numbers(&result["maxwell_bar_F"][i]));
+        assert_eq!((row.len(), bars.len()), (rows.len(), rows.len()));
+        for j in 0..rows.len() {
+            let sign = if i == j { 1.0 } else { -1.0 };
+            assert!(-bars[j] <= sign * row[j], "{name}: entry {i} {j} of {row:?}");
+        }
+        let to_reference = result["mutual_F"][i][i].as_f64().unwrap();
+        assert!(0.0 < to_reference, "{name}: row {i} has no capacitance to the reference");
+        let neighbours = result["neighbours"][i]["neighbours"].as_array().unwrap();
+        let sum: f64 = neighbours.iter().map(|n| n["capacitance_F"].as_f64().unwrap()).sum();
+        let bar: f64 = neighbours.iter().map(|n| n["bar_F"].as_f64().unwrap()).sum();
+        assert!(
+            (sum - row[i]).abs() <= bar + bars[i],
+            "{name}: neighbours of {i} sum to {sum}, not {}",
+            row[i]
+        );
+    }
+    assert!(!result["interfaces"].as_array().unwrap().is_empty());
+    assert!(!result["conductor_faces"].as_array().unwrap().is_empty());
+    let failed = result["checks"].as_array().unwrap().iter().any(|check| check["passed"] == false);
+    let doubtful = failed || result["head"]["target_met"] == false;
+    assert_eq!(run.code, Some(i32::from(doubtful)), "{name}: {}", run.stdout);
+    assert!(run.stdout.contains("Maxwell capacitance matrix"));
+    assert!(run.stderr.starts_with("to solve: "), "{}", run.stderr);
+    assert_eq!(run.stderr.lines().count(), 1, "no progress where there is no terminal: {}", run.stderr);
+    assert_eq!(files[..], ["capacitance.cir", "capacitance.csv", "neighbours.csv", "result.json"]);
+}
+
+#[test]
+fn the_lift_plate_is_extracted() {
+    check_fixture("lift-plate", &extract("lift-plate", &[]), &["SENSE", "DRIVE"], &["GUARD", "infinity"]);
+}
+
+#[test]
+fn the_oil_probe_is_extracted() {
+    let rows = ["SENSE", "DRIVE", "GUARD"];
+    check_fixture("oil-probe", &OIL_PROBE, &rows, &["GND", "bottom", "infinity"]);
+}
+
+#[test]
+fn the_via_fan_is_extracted() {
+    if std::env::var_os("SLOW_TESTS").is_none() {
+        println!("skipped: the via fan takes minutes without optimisation; SLOW_TESTS=1 runs it");
+        return;
+    }
+    check_fixture("via-fan", &extract("via-fan", &[]), &["SENSE", "DRIVE"], &["GND", "GUARD", "infinity"]);
+}
+
+/// What: the reports do not depend on the number of threads, but for times and memory.
+#[test]
+fn threads_change_no_digit() {
+    let results = ["1", "3"].map(|threads| {
+        let mut found = extract("lift-plate", &["--threads", threads, "--quiet"]);
+        assert!(found.run.stdout.is_empty() && found.run.stderr.is_empty(), "quiet means quiet");
+        assert!(found.result.as_object_mut().unwrap().remove("solver").is_some());
+        found.result
+    });
+    assert_eq!(results[0], results[1]);
 }
 
 /// What: what `inspect` says of the lift plate is what the job draws.
@@ -189,4 +318,71 @@ fn text_that_is_not_utf8_is_refused() {
     let run = chargeskin(&["inspect", job.to_str().unwrap()]);
     assert_eq!(run.code, Some(2));
     assert!(run.stderr.contains("cli::not_utf8") && run.stderr.contains("byte 10"), "{}", run.stderr);
+}
+
+/// Lines of the blocks of one kind in a page.
+fn block_lines(page: &str, kind: &str) -> Vec<String> {
+    let opening = format!("```{kind}");
+    let (mut lines, mut inside) = (Vec::new(), None);
+    for line in page.lines().map(str::trim_end) {
+        match inside {
+            None if line.starts_with("```") => inside = Some(line == opening),
+            Some(_) if line == "```" => inside = None,
+            Some(true) => lines.push(line.to_owned()),
+            _ => {}
+        }
+    }
+    lines
+}
+
+/// What: every command of our own in the README and in docs does what the page says: it ends with exit code 0.
+#[test]
+fn documented_commands_run() {
+    const EXAMPLE: &str = "extract fixtures/oil-probe/job.toml --out out";
+    let mut pages = vec![root().join("README.md"), root().join("DEVELOPERS.md")];
+    pages.extend(std::fs::read_dir(root().join("docs")).unwrap().map(|entry| entry.unwrap().path()));
+    let mut n_run = 0;
+    for page in pages.into_iter().filter(|page| page.extension().is_some_and(|ending| ending == "md")) {
+        for line in block_lines(&std::fs::read_to_string(&page).unwrap(), "sh") {
+            // What else a page may show: the suite itself, and the gates.
+            let Some(words) = line.strip_prefix("cargo run --release -- ") else {
+                assert!(
+                    line.starts_with("cargo test") || line == ".ci/run",
+                    "{}: what is `{line}`?",
+                    page.display()
+                );
+                continue;
+            };
+            n_run += 1;
+            if words == EXAMPLE {
+                assert_eq!(OIL_PROBE.run.code, Some(0), "{line}: {}", OIL_PROBE.run.stdout);
+                continue;
+            }
+            let run = chargeskin(&words.split_whitespace().collect::<Vec<_>>());
+            assert_eq!(run.code, Some(0), "{line}: {}{}", run.stdout, run.stderr);
+        }
+    }
+    assert!(0 < n_run);
+}
+
+/// The words of a line that hold no digit. What stands beside a number may change with it: a unit, `below`.
+fn plain_words(line: &str) -> Vec<&str> {
+    let varies = ["below", "fF", "pF", "nF"];
+    line.split_whitespace()
+        .filter(|word| !word.contains(|c: char| c.is_ascii_digit()) && !varies.contains(word))
+        .collect()
+}
+
+/// What: the README shows what the command prints. Words are compared and digits are not: they may differ in the last
+/// places from one processor to the next.
+#[test]
+fn readme_shows_what_is_printed() {
+    let page = std::fs::read_to_string(root().join("README.md")).unwrap();
+    let shown = block_lines(&page, "text");
+    let printed: Vec<String> = OIL_PROBE.run.stdout.lines().map(|line| line.trim_end().to_owned()).collect();
+    assert!(10 < printed.len());
+    assert_eq!(shown.len(), printed.len(), "{}", OIL_PROBE.run.stdout);
+    for (shown, printed) in shown.iter().zip(&printed) {
+        assert_eq!(plain_words(shown), plain_words(printed), "README: {shown}\nprinted: {printed}");
+    }
 }
