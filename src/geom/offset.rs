@@ -274,7 +274,8 @@ mod tests {
         let inset = ring.offset_by_corner(-100.0).unwrap();
         assert!((inset.area() - (640_000.0 - 160_000.0)).abs() < 1e-9);
         assert_eq!(inset.contours().map(Vec::len).collect::<Vec<_>>(), [4, 4]);
-        assert_eq!(ring.offset_by_corner(-160.0), None, "the hole would reach the rim");
+        assert_eq!(ring.offset_by_corner(-200.0), None, "the hole would reach the rim");
+        assert_eq!(ring.offset_by_corner(-210.0), None, "the hole would pass the rim");
         assert_eq!(square(0, 0, 100).offset_by_corner(-60.0), None, "it would turn inside out");
     }
 }

@@ -8,6 +8,9 @@ use chargeskin::net::{ModelNet, NameSource, NetId, Role};
 
 use std::f64::consts::PI;
 
+/// Corners of the polygon that stands for a disk.
+const RIM_CORNERS: usize = 48;
+
 /// Builds a set of faces piece by piece. Lengths in m.
 #[derive(Default)]
 pub(crate) struct Bodies {
@@ -116,10 +119,11 @@ impl Bodies {
         }
     }
 
-    /// A solid round cylinder or tube, axis along z, as a prism of the same section area. `bore` is the radius of a
-    /// hole through it, 0 for none.
-    pub(crate) fn prism(&mut self, net: NetId, body: BodyId, radius: f64, bore: f64, z: [f64; 2], n: usize) {
+    /// A solid round cylinder or tube, axis along z, as a prism of the same section area, with `n` corners. The first
+    /// radius is the outer one, the second that of a hole through it, 0 for none.
+    pub(crate) fn prism(&mut self, net: NetId, body: BodyId, radii: [f64; 2], z: [f64; 2], n: usize) {
         let kind = FaceKind::Conductor { net, body };
+        let [radius, bore] = radii;
         let outer = ring_points(radius, n);
         let at = |p: &[f64; 2], z: f64| Vec3::new(p[0], p[1], z);
         let lid = |z: f64, points: &[[f64; 2]], up: bool| {
@@ -150,16 +154,10 @@ impl Bodies {
         wall(&hole, false);
     }
 
-    /// A flat disk or ring of no thickness at height z, as a polygon of the same area, in one dielectric.
-    pub(crate) fn disk(
-        &mut self,
-        net: NetId,
-        body: BodyId,
-        semi_axes: [f64; 2],
-        bore: f64,
-        z: f64,
-        n: usize,
-    ) {
+    /// A flat disk or ring of no thickness at height z, as a polygon of the same area with [`RIM_CORNERS`], in one
+    /// dielectric.
+    pub(crate) fn disk(&mut self, net: NetId, body: BodyId, semi_axes: [f64; 2], bore: f64, z: f64) {
+        let n = RIM_CORNERS;
         let lift = |points: &[[f64; 2]], ratio: f64| -> Vec<Vec3> {
             points.iter().map(|p| Vec3::new(p[0], p[1] * ratio, z)).collect()
         };

@@ -167,7 +167,7 @@ fn thin_plates() {
 
 /// Derived: a polygon of n corners with a disk's area has a capacitance above the disk's by less than the square of
 /// the relative ripple of its rim, which is (pi/n)²/3 in amplitude and has no first-order effect because the area is
-/// kept; its rim is longer, but stays within 1e-3 at n = 48.
+/// kept; its rim is longer, but stays within 1e-3 at the 48 corners of `bodies::RIM_CORNERS`.
 const POLYGON: f64 = 1e-3;
 
 #[test]
@@ -175,10 +175,10 @@ fn thin_disks() {
     if !slow("thin_disks") {
         return;
     }
-    compare("A-disk", &alone(|b, net, body| b.disk(net, body, [10.0 * MM; 2], 0.0, 0.0, 48)), POLYGON);
-    compare("A-washer", &alone(|b, net, body| b.disk(net, body, [10.0 * MM; 2], 5.0 * MM, 0.0, 48)), POLYGON);
+    compare("A-disk", &alone(|b, net, body| b.disk(net, body, [10.0 * MM; 2], 0.0, 0.0)), POLYGON);
+    compare("A-washer", &alone(|b, net, body| b.disk(net, body, [10.0 * MM; 2], 5.0 * MM, 0.0)), POLYGON);
     let semi_axes = [20.0 * MM, 10.0 * MM];
-    compare("A-elliptic-disk", &alone(|b, net, body| b.disk(net, body, semi_axes, 0.0, 0.0, 48)), POLYGON);
+    compare("A-elliptic-disk", &alone(|b, net, body| b.disk(net, body, semi_axes, 0.0, 0.0)), POLYGON);
     for (id, gap) in [
         ("A-disks-0.1", 1.0),
         ("A-disks-0.2", 2.0),
@@ -189,19 +189,19 @@ fn thin_disks() {
         let (mut bodies, vacuum) = Bodies::in_vacuum();
         for (name, z) in [("A", 0.0), ("B", gap * MM)] {
             let net = bodies.row(name);
-            bodies.disk(net, vacuum, [10.0 * MM; 2], 0.0, z, 48);
+            bodies.disk(net, vacuum, [10.0 * MM; 2], 0.0, z);
         }
         compare(id, &solve(&bodies.faces), POLYGON);
     }
     let (mut bodies, vacuum) = Bodies::in_vacuum();
     for (name, z, radius) in [("A", 0.0, 10.0), ("B", 4.0, 8.0), ("C", 10.0, 6.0)] {
         let net = bodies.row(name);
-        bodies.disk(net, vacuum, [radius * MM; 2], 0.0, z * MM, 48);
+        bodies.disk(net, vacuum, [radius * MM; 2], 0.0, z * MM);
     }
     compare("A-three-disks", &solve(&bodies.faces), POLYGON);
     let (mut bodies, vacuum) = Bodies::in_vacuum();
     let net = bodies.row("A");
-    bodies.disk(net, vacuum, [10.0 * MM; 2], 0.0, 5.0 * MM, 48);
+    bodies.disk(net, vacuum, [10.0 * MM; 2], 0.0, 5.0 * MM);
     bodies.faces.planes.below = Some(0.0);
     bodies.faces.outer_er.below = None;
     compare("A-disk-over-plane", &solve(&bodies.faces), POLYGON);
@@ -226,12 +226,12 @@ fn round_bodies() {
     compare("A-torus", &alone_surface(&torus(20.0 * MM, 10.0 * MM, 40, 20)), FACETS);
     compare(
         "A-cyl-L2",
-        &alone(|b, net, body| b.prism(net, body, 10.0 * MM, 0.0, [0.0, 20.0 * MM], 32)),
+        &alone(|b, net, body| b.prism(net, body, [10.0 * MM, 0.0], [0.0, 20.0 * MM], 32)),
         FACETS,
     );
     compare(
         "A-cyl-L10",
-        &alone(|b, net, body| b.prism(net, body, 10.0 * MM, 0.0, [0.0, 100.0 * MM], 32)),
+        &alone(|b, net, body| b.prism(net, body, [10.0 * MM, 0.0], [0.0, 100.0 * MM], 32)),
         FACETS,
     );
     let (mut bodies, vacuum) = Bodies::in_vacuum();
@@ -306,8 +306,8 @@ fn barrel_through_a_plane() {
     }
     let (mut bodies, vacuum) = Bodies::in_vacuum();
     let (via, plane) = (bodies.row("VIA"), bodies.row("PLANE"));
-    bodies.prism(via, vacuum, 0.15 * MM, 0.0, [-0.8 * MM, 0.8 * MM], 24);
-    bodies.prism(plane, vacuum, 2.0 * MM, 0.4 * MM, [-0.0175 * MM, 0.0175 * MM], 24);
+    bodies.prism(via, vacuum, [0.15 * MM, 0.0], [-0.8 * MM, 0.8 * MM], 24);
+    bodies.prism(plane, vacuum, [2.0 * MM, 0.4 * MM], [-0.0175 * MM, 0.0175 * MM], 24);
     compare("A-via-barrel", &solve(&bodies.faces), FACETS);
 }
 
