@@ -130,5 +130,5 @@ fn product_flux<const N: usize>(test: &Points<N>, source: &Points<N>, r: Vec3, n
 }
 
 /// Field of the surface's own charge on either side, per unit density: 1 / (2 ε₀), V/m per C/m². Not part of
-/// [`flux`], which is the principal value.
+/// [`flux()`], which is the principal value.
 pub const OWN_SIDE: f64 = 0.5 / EPS0;
