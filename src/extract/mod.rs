@@ -1,4 +1,4 @@
-//! The loop: [`SlabModel`](crate::slab::SlabModel) to [`Extraction`], mesh after mesh until each error bar fits.
+//! The loop: [`SlabModel`] to [`Extraction`], mesh after mesh until each error bar fits.
 
 mod chord;
 mod error;

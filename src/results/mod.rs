@@ -1,4 +1,4 @@
-//! [`Mesh`](crate::mesh::Mesh) and [`Charge`](crate::solve::Charge) to [`Results`]: what the charge says.
+//! [`Mesh`] and [`Charge`] to [`Results`]: what the charge says.
 //!
 //! Floating nets are settled here: their potentials follow from their free charge by superposition.
 
