@@ -60,7 +60,7 @@ proptest! {
     }
 
     /// What: leaning copper of any shape, with vias, under a mask with an opening. A piece that cannot lean stands
-    /// upright with a warning, but nothing is refused and all is closed.
+    /// upright with a warning; walls that meet other parts at foot and top are refused (docs/unsupported.md); all else is closed.
     #[test]
     fn random_leaning_copper_closes(pieces in pieces(), round: bool, slope in 40.0f64..140.0, opening in 0i64..300) {
         let mut board = furnished(three_layer(true), &pieces, round);
@@ -76,7 +76,10 @@ proptest! {
         let Ok(model) = board.slabs().map(|warned| warned.value) else { return Ok(()) };
         match chargeskin::faces::derive(&model) {
             Ok(faces) => assert_closed_to_a_step(&faces.value),
-            Err(error) => assert!(slope > 90.0 || matches!(error, FacesError::NoMetal), "{error}"),
+            Err(error) => {
+                let known = matches!(error, FacesError::NoMetal | FacesError::LeaningWall { .. });
+                assert!(slope > 90.0 || known, "{error}");
+            }
         }
     }
 }

@@ -176,7 +176,7 @@ fn a_sheet_on_a_slab() {
 /// volume is that of the pads and of the barrel between them.
 #[test]
 fn a_via_through_a_plane() {
-    let plane = rect(-2000, -2000, 2000, 2000).difference(&disc(0, 0, 400, 32));
+    let plane = rect(-1200, -1200, 1200, 1200).difference(&disc(0, 0, 400, 32));
     let board = four_layer()
         .copper("top", "SIG", disc(0, 0, 250, 24))
         .copper("bottom", "SIG", disc(0, 0, 250, 24))
