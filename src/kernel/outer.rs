@@ -18,20 +18,25 @@ pub struct Effort {
     largest_q: [f64; 6],
     /// Halvings of a length that touches a singularity.
     halvings: i32,
+    /// Most halvings of one panel in all.
+    pub most: u32,
 }
 
 impl Effort {
     /// ρ^(-2n) of about 2e-5; for the potential, whose singularities at edges are weak (d ln d).
-    pub const POTENTIAL: Effort = Effort { largest_q: [0.008, 0.12, 0.31, 0.52, 0.73, 0.9], halvings: 5 };
+    pub const POTENTIAL: Effort =
+        Effort { largest_q: [0.008, 0.12, 0.31, 0.52, 0.73, 0.9], halvings: 5, most: MOST_HALVINGS };
     /// ρ^(-2n) of about 1e-5; for the solid angle, whose errors the row of a dense dielectric magnifies.
-    pub const FLUX: Effort = Effort { largest_q: [0.005, 0.1, 0.28, 0.48, 0.68, 0.86], halvings: 6 };
+    pub const FLUX: Effort =
+        Effort { largest_q: [0.005, 0.1, 0.28, 0.48, 0.68, 0.86], halvings: 6, most: MOST_HALVINGS };
     /// ρ^(-2n) of about 1e-9; the measure for the other two.
-    pub const REFERENCE: Effort = Effort { largest_q: [1e-5, 0.005, 0.04, 0.12, 0.24, 0.37], halvings: 11 };
+    pub const REFERENCE: Effort =
+        Effort { largest_q: [1e-5, 0.005, 0.04, 0.12, 0.24, 0.37], halvings: 11, most: u32::MAX };
 }
 
 /// Most halvings of one panel. Graded pieces towards an edge and its ends need a few dozen; only long thin triangles side by
 /// side want more, and what is left of their error is spread over the whole panel.
-const MOST_HALVINGS: u32 = 150;
+const MOST_HALVINGS: u32 = 400;
 
 /// Mean over `outer` of `f`, a function of a point in the frame of `inner` (m) that is analytic but at its edges.
 pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) -> f64) -> f64 {
@@ -118,7 +123,7 @@ impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
         let may = [sides[0].0 > self.shortest[0], sides[1].0 > self.shortest[1]];
         let most = self.effort.largest_q[5];
         let worst = usize::from(q[1] * f64::from(u8::from(may[1])) > q[0] * f64::from(u8::from(may[0])));
-        if q[worst] > most && may[worst] && self.halved.get() < MOST_HALVINGS {
+        if q[worst] > most && may[worst] && self.halved.get() < self.effort.most {
             self.halved.set(self.halved.get() + 1);
             let (one, two) = halves(patch, worst);
             return self.integral(&one) + self.integral(&two);
