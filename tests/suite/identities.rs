@@ -119,8 +119,7 @@ fn an_image_plane_is_the_mirrored_conductor() {
     cuboid(&mut both, Vec3::new(0.0, 0.0, -0.8), Vec3::new(1.0, 1.0, -0.3), &cuts, two);
     let (by_plane, by_pair) = (solved(&over).maxwell[(0, 0)], solved(&both).maxwell);
     let expected = by_pair[(0, 0)] - by_pair[(0, 1)];
-    // The near rule may take the other panel of a pair as the outer one: the rules' 1e-5 bounds the difference (seen: 4e-11).
-    assert!((by_plane / expected - 1.0).abs() < 1e-5, "{by_plane} for {expected}");
+    assert!((by_plane / expected - 1.0).abs() < 1e-9, "{by_plane} for {expected}");
 }
 
 /// What: a box half embedded in a plane interface has (er1 + er2)/2 times its capacitance in vacuum, wherever the
