@@ -78,10 +78,7 @@ impl Region {
     /// The region with those holes filled whose bounds do not meet `frame`.
     #[must_use]
     pub fn with_far_holes_filled(&self, frame: &Bounds) -> Region {
-        let near = |ring: &Contour| {
-            let ring = Region::from_shapes(vec![vec![ring.clone()]]);
-            ring.bounds().is_some_and(|bounds| bounds.meets(frame))
-        };
+        let near = |ring: &Contour| Bounds::of(ring).is_some_and(|bounds| bounds.meets(frame));
         let kept = |shape: &Shape| {
             let rings = shape.iter().enumerate().filter(|(k, ring)| *k == 0 || near(ring));
             rings.map(|(_, ring)| ring.clone()).collect()
@@ -92,9 +89,9 @@ impl Region {
     /// The pieces whose bounds meet `frame`.
     #[must_use]
     pub fn pieces_meeting(&self, frame: &Bounds) -> Region {
-        let meets = |piece: &Region| piece.bounds().is_some_and(|bounds| bounds.meets(frame));
-        let pieces: Vec<Region> = self.pieces().into_iter().filter(meets).collect();
-        Region::gathered(&pieces)
+        let meets =
+            |shape: &&Shape| Bounds::of(shape.iter().flatten()).is_some_and(|bounds| bounds.meets(frame));
+        Region::from_shapes(self.shapes().iter().filter(meets).cloned().collect())
     }
 
     /// The region a fraction `t` of the way, corner by corner, to `other`, which must have the same rings.

@@ -87,6 +87,16 @@ pub struct Bounds {
 }
 
 impl Bounds {
+    /// Bounds of `points`, `None` when there are none.
+    pub(in crate::geom) fn of<'a>(points: impl IntoIterator<Item = &'a Point>) -> Option<Bounds> {
+        let mut points = points.into_iter();
+        let first = *points.next()?;
+        Some(points.fold(Bounds { lo: first, hi: first }, |b, p| Bounds {
+            lo: Point::new(b.lo.x.min(p.x), b.lo.y.min(p.y)),
+            hi: Point::new(b.hi.x.max(p.x), b.hi.y.max(p.y)),
+        }))
+    }
+
     /// Whether the two share a point.
     #[must_use]
     pub fn meets(&self, other: &Bounds) -> bool {
@@ -212,12 +222,7 @@ impl Region {
     /// Bounds, `None` for the empty region.
     #[must_use]
     pub fn bounds(&self) -> Option<Bounds> {
-        let mut points = self.contours().flatten();
-        let first = *points.next()?;
-        Some(points.fold(Bounds { lo: first, hi: first }, |b, p| Bounds {
-            lo: Point::new(b.lo.x.min(p.x), b.lo.y.min(p.y)),
-            hi: Point::new(b.hi.x.max(p.x), b.hi.y.max(p.y)),
-        }))
+        Bounds::of(self.contours().flatten())
     }
 
     /// Whether `at` is strictly inside; a point on the border may go either way.

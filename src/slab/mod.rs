@@ -14,7 +14,7 @@ mod plane;
 mod region_choice;
 mod roles;
 
-use crate::artwork::{Artwork, Lining};
+use crate::artwork::{Artwork, Lining, Pattern};
 use crate::diag::{Warned, Warning};
 use crate::geom::region::{Bounds, Grid, Region};
 use crate::job::{Job, LayerId, RegionChoice, Stackup};
@@ -157,10 +157,12 @@ fn scene<'a>(
     (artwork, stackup, pile): (&'a Artwork, &'a Stackup, &'a Pile),
     nets: &'a [ModelNet],
     model_id: &[Option<NetId>],
-    (window, bounds): (Bounds, Bounds),
+    (frame, bounds): (Bounds, Bounds),
     coats: Vec<coating::Coat>,
 ) -> Scene<'a> {
-    let (window, extent) = (window.region(), bounds.region());
+    let (window, extent) = (frame.region(), bounds.region());
+    let opening = |open: &Pattern| Pattern { region: open.region.pieces_meeting(&frame), ..*open };
+    let openings = artwork.openings.iter().map(opening).collect();
     let profile = artwork.profile.as_ref().map(|profile| profile.intersection(&extent));
     let profile = profile.filter(|inside| *inside != extent);
     let (mut barrels, mut bare) = (Vec::new(), Vec::new());
@@ -179,9 +181,7 @@ fn scene<'a>(
                 barrels.push(Barrel { net: Some(id), region, z_lo: to.z_lo, z_hi: from.z_hi });
             }
             Lining::Bare => {
-                let frame = window.bounds();
-                let near = frame.map_or_else(Region::empty, |frame| hole.region.pieces_meeting(&frame));
-                let region = near.intersection(&extent);
+                let region = hole.region.pieces_meeting(&frame).intersection(&extent);
                 let z_lo = through(hole.to, false).unwrap_or(to.z_lo);
                 let z_hi = through(hole.from, true).unwrap_or(from.z_hi);
                 bare.push(Barrel { net: None, region, z_lo, z_hi });
@@ -190,7 +190,7 @@ fn scene<'a>(
     }
     barrels.retain(|barrel| !barrel.region.is_empty());
     bare.retain(|hole| !hole.region.is_empty());
-    Scene { artwork, stackup, pile, nets, window, extent, bounds, profile, coats, barrels, bare }
+    Scene { artwork, stackup, pile, nets, window, extent, bounds, profile, coats, barrels, bare, openings }
 }
 
 /// Warns of copper outside of the board, and of a board between two different open media.

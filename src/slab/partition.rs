@@ -31,6 +31,8 @@ pub(crate) struct Scene<'a> {
     /// Plated barrels and bare holes, clipped.
     pub(crate) barrels: Vec<Barrel>,
     pub(crate) bare: Vec<Barrel>,
+    /// Openings of coatings; those beyond the window stand over copper that is not modelled and are left out.
+    pub(crate) openings: Vec<Pattern>,
 }
 
 /// A hole with the interval of z that it passes, m. `net` is `None` for a bare one.
@@ -115,7 +117,7 @@ impl Scene<'_> {
                 continue;
             };
             let what = format!("`{}` in `{}`", self.nets[net.idx()].name, self.stackup.get(layer).name);
-            let near = Metal { wide: near_pieces(&metal.wide, &self.bounds), ..metal.clone() };
+            let near = Metal { wide: metal.wide.pieces_meeting(&self.bounds), ..metal.clone() };
             let (foot, top) = leaning(&near, slope, &what, self.artwork.grid, warnings);
             let mean = clip(&mean_outline(&near.wide, slope));
             let (foot, top) = (clip(&foot), clip(&top));
@@ -259,16 +261,13 @@ impl Scene<'_> {
             claims.take(Fill::Dielectric(self.outside()), &outside);
         }
         for (coat, copper) in self.coats.iter().zip(coated) {
-            let openings = pattern_of(&self.artwork.openings, coat.layer);
-            // Openings beyond the window stand over copper that is not modelled.
-            let frame = self.window.bounds();
-            let openings = openings.zip(frame).map(|(open, frame)| open.pieces_meeting(&frame));
+            let openings = pattern_of(&self.openings, coat.layer);
             let reach = match coat.at(mid, copper) {
                 Reach::Nowhere => continue,
                 Reach::Everywhere => self.extent.clone(),
                 Reach::Within(region) => within(&region, &self.extent),
             };
-            let reach = openings.map_or(reach.clone(), |open| reach.difference_keeping(&open));
+            let reach = openings.map_or(reach.clone(), |open| reach.difference_keeping(open));
             claims.take(Fill::Dielectric(coat.material), &reach);
         }
         if let (EntryKind::Dielectric, Some(own)) = (entry.kind, self.pile.material(entry.layer)) {
@@ -337,12 +336,6 @@ fn pattern_of(patterns: &[Pattern], layer: LayerId) -> Option<&Region> {
 /// How far a corner may move between foot and top, steps: the inset at the sharpest corner that is mitred.
 fn reach_of(lean: Lean) -> f64 {
     8.0 * lean.inset.abs() + 4.0
-}
-
-/// The pieces of `region` that come near `bounds`.
-fn near_pieces(region: &Region, bounds: &Bounds) -> Region {
-    let near = |piece: &Region| piece.bounds().is_some_and(|b| b.meets(bounds));
-    Region::gathered(&region.pieces().into_iter().filter(near).collect::<Vec<_>>())
 }
 
 /// The fill that has most of the border, metal only when there is nothing else.
