@@ -32,7 +32,7 @@ pub(crate) fn subcircuit(x: &Extraction, notes: Notes) -> String {
         comment(&mut text, &format!("{node} = {name}"));
     }
     let pins = nodes.iter().map(String::as_str).chain(["ref"]);
-    wrapped(&mut text, ".subckt chargeskin", pins);
+    wrapped(&mut text, [".subckt chargeskin", "+"], pins);
     for (k, part) in network.parts.iter().enumerate() {
         let [a, b] = part.between.map(|node| node.map_or("ref", |i| nodes[i].as_str()));
         let Barred { value, bar } = part.capacitance;
@@ -136,28 +136,18 @@ fn legal_nodes(names: &[&str]) -> Vec<String> {
 
 /// A comment, broken at spaces where it is too long. Line breaks in names become spaces.
 fn comment(text: &mut String, line: &str) {
-    let mut current = String::from("*");
-    for word in line.split_whitespace() {
+    wrapped(text, ["*", "*  "], line.split_whitespace());
+}
+
+/// Words after the first head, and on further lines after the second. A line that is too long already for its first word
+/// takes it all the same.
+fn wrapped<'a>(text: &mut String, [head, further]: [&str; 2], words: impl Iterator<Item = &'a str>) {
+    let mut current = head.to_owned();
+    for word in words {
         if LINE_LIMIT < current.chars().count() + 1 + word.chars().count() && 1 < current.len() {
             text.push_str(&current);
             text.push('\n');
-            current = String::from("*  ");
-        }
-        current.push(' ');
-        current.push_str(word);
-    }
-    text.push_str(&current);
-    text.push('\n');
-}
-
-/// A card with its words, continued after a `+`.
-fn wrapped<'a>(text: &mut String, card: &str, words: impl Iterator<Item = &'a str>) {
-    let mut current = card.to_owned();
-    for word in words {
-        if LINE_LIMIT < current.len() + 1 + word.len() {
-            text.push_str(&current);
-            text.push('\n');
-            current = String::from("+");
+            current = further.to_owned();
         }
         current.push(' ');
         current.push_str(word);
@@ -180,7 +170,7 @@ mod tests {
     fn long_cards_go_on_after_a_plus() {
         let pins: Vec<String> = (0..40).map(|k| format!("net_number_{k}")).collect();
         let mut text = String::new();
-        wrapped(&mut text, ".subckt chargeskin", pins.iter().map(String::as_str));
+        wrapped(&mut text, [".subckt chargeskin", "+"], pins.iter().map(String::as_str));
         assert!(text.lines().all(|line| line.len() <= LINE_LIMIT));
         assert!(text.lines().skip(1).all(|line| line.starts_with("+ ")));
         assert_eq!(text.split_whitespace().filter(|word| word.starts_with("net_")).count(), 40);
