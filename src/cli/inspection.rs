@@ -28,7 +28,8 @@ pub(crate) fn inspect(model: &Model, options: &ExtractOptions, sources: &Sources
             area_m2: net_area(model, &pieces, &net.name),
         })
         .collect();
-    let cost = extract::expect(&model.slabs, options)
+    let cost = extract::prepare(&model.slabs, options)
+        .map(|prepared| prepared.expectation(options))
         .map(|e| Cost { panels: e.panels, memory: e.memory, seconds: e.seconds })
         .map_err(|error| error.to_string());
     Inspection {

@@ -8,7 +8,7 @@ use crate::cli::failure::Failure;
 use crate::cli::inputs;
 use crate::cli::sources::Sources;
 use crate::diag::Warning;
-use crate::extract::{self, ExtractOptions, Extraction, Progress};
+use crate::extract::{self, ExtractOptions, Extraction, Prepared, Progress};
 use crate::geom::Grid;
 use crate::job::{self, Job, LayerKind, Stackup};
 use crate::slab::{self, SlabModel, SlabOptions};
@@ -82,16 +82,18 @@ pub fn build_model(plan: Plan, sources: &mut Sources) -> Result<Model, Failure> 
     Ok(Model { plan, artwork, slabs, warnings })
 }
 
-/// Solves `model`; the warnings of all stages are in the extraction.
+/// Solves `model`, which `prepared` was made of with the same options; the warnings of all stages are in the extraction.
 ///
 /// # Errors
 /// [`Failure::Extract`] with what the stages report.
 pub fn solve(
     model: &Model,
+    prepared: Prepared,
     options: &ExtractOptions,
     progress: &(dyn Fn(Progress) + Sync),
 ) -> Result<Extraction, Failure> {
-    let mut extraction = extract::extract(&model.slabs, &model.plan.job, options, progress)?;
+    let mut extraction =
+        extract::extract_prepared(prepared, &model.slabs, &model.plan.job, options, progress)?;
     extraction.warnings.splice(0..0, model.warnings.iter().cloned());
     Ok(extraction)
 }

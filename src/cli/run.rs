@@ -85,13 +85,14 @@ fn run_extract(job: &Path, out: &Path, quiet: bool, sources: &mut Sources) -> Re
     output::prepare(out)?;
     let model = build_model(plan, sources)?;
     let options = options();
-    let expected = extract::expect(&model.slabs, &options)?;
+    let prepared = extract::prepare(&model.slabs, &options)?;
     if !quiet {
+        let expected = prepared.expectation(&options);
         let cost = Cost { panels: expected.panels, memory: expected.memory, seconds: expected.seconds };
         say(&format!("to solve: {}\n", cost.line()));
     }
     let line = ProgressLine::new(!quiet);
-    let solved = solve(&model, &options, &|progress| line.tell(progress));
+    let solved = solve(&model, prepared, &options, &|progress| line.tell(progress));
     line.finish();
     let mut extraction = solved?;
     extraction.solver.peak_memory = memory::peak();

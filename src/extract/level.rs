@@ -45,17 +45,20 @@ impl Level {
 }
 
 /// Panels the faces at `density`; warnings are appended to `warnings`.
-///
-/// Grading leaves faces alone at whose edges no charge crowds, such as the facets of smooth bodies. They are cut in two
-/// `halvings` times, so that a model of nothing else gets finer from level to level as well.
 pub(crate) fn panelize(
     faces: &Faces,
     density: f64,
-    (halvings, max_panels): (usize, usize),
+    max_panels: usize,
     warnings: &mut Vec<Warning>,
 ) -> Result<Mesh, ExtractError> {
-    let options = MeshOptions { density, max_panels };
-    let mut mesh = crate::mesh::panelize(faces, &options)?.drain(warnings);
+    Ok(crate::mesh::panelize(faces, &MeshOptions { density, max_panels })?.drain(warnings))
+}
+
+/// The mesh with the panels of smooth faces cut in two `halvings` times.
+///
+/// Grading leaves faces alone at whose edges no charge crowds, such as the facets of smooth bodies. A model of nothing else
+/// gets finer from level to level in this way.
+pub(crate) fn halve_smooth(mut mesh: Mesh, faces: &Faces, halvings: usize) -> Mesh {
     let smooth: Vec<bool> = faces
         .faces
         .iter()
@@ -72,7 +75,7 @@ pub(crate) fn panelize(
         }
         mesh = mesh.split(&cuts);
     }
-    Ok(mesh)
+    mesh
 }
 
 /// The direction that cuts the longer sides of a quadrilateral; the longest side of a triangle.

@@ -5,9 +5,8 @@ mod error;
 mod error_bar;
 mod level;
 mod options;
+mod prepared;
 mod sequence;
-
-use std::time::Instant;
 
 use crate::diag::Warning;
 use crate::faces::FaceGroup;
@@ -18,7 +17,8 @@ use crate::slab::SlabModel;
 use faer::Mat;
 
 pub use error::ExtractError;
-pub use options::{Expectation, ExtractOptions, expect};
+pub use options::ExtractOptions;
+pub use prepared::{Expectation, Prepared, prepare};
 pub use sequence::{Refinement, refine};
 
 /// Speed of light in vacuum, m/s: exact by the definition of the metre.
@@ -50,15 +50,26 @@ pub fn extract(
     options: &ExtractOptions,
     progress: &(dyn Fn(Progress) + Sync),
 ) -> Result<Extraction, ExtractError> {
+    extract_prepared(prepare(model, options)?, model, job, options, progress)
+}
+
+/// As [`extract`], with what [`prepare`] made of the same `model` and `options`.
+///
+/// # Errors
+/// As [`extract`].
+pub fn extract_prepared(
+    prepared: Prepared,
+    model: &SlabModel,
+    job: &Job,
+    options: &ExtractOptions,
+    progress: &(dyn Fn(Progress) + Sync),
+) -> Result<Extraction, ExtractError> {
     if !model.nets.iter().any(|net| net.role == Role::Row) {
         return Err(ExtractError::NoRows);
     }
-    let started = Instant::now();
-    let mut warnings = Vec::new();
-    let faces = crate::faces::derive(model)?.drain(&mut warnings);
-    let faces_seconds = started.elapsed().as_secs_f64();
+    let Prepared { faces, coarsest, mut warnings, faces_seconds } = prepared;
     let options = ExtractOptions { chord_share: options.chord_share + chord::share(model), ..*options };
-    let refined = refine(&faces, job.accuracy, &options, &mut warnings, progress)?;
+    let refined = sequence::refine_from(&faces, coarsest, job.accuracy, &options, &mut warnings, progress)?;
     let mut seconds = vec![("faces".to_owned(), faces_seconds)];
     seconds.extend(refined.seconds);
     Ok(Extraction {

@@ -1,8 +1,4 @@
-//! What an extraction may use, and what it is expected to take.
-
-use crate::extract::error::ExtractError;
-use crate::extract::level;
-use crate::slab::SlabModel;
+//! What an extraction may use, and what a solve of given size takes.
 
 /// Bytes per matrix entry of a dense solve, the factorisation in place and its workspace included.
 const BYTES_PER_ENTRY: f64 = 1.35 * 8.0;
@@ -80,36 +76,4 @@ impl ExtractOptions {
         // LU takes 2/3 n³ operations (Golub and Van Loan, Matrix Computations, section 3.2).
         (n * n * SECONDS_PER_ENTRY + 2.0 / 3.0 * n.powi(3) / FLOPS_PER_CORE) / self.threads.max(1) as f64
     }
-}
-
-/// What an extraction is expected to take, up to its second level: the least that gives a bar.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub struct Expectation {
-    /// Panels of the second level.
-    pub panels: usize,
-    /// Peak memory, bytes.
-    pub memory: u64,
-    /// Time, s.
-    pub seconds: f64,
-    /// Panels that fit the limits.
-    pub allowed: usize,
-}
-
-/// Meshes `model` as an extraction would begin to, without solving.
-///
-/// # Errors
-/// What the stages report.
-pub fn expect(model: &SlabModel, options: &ExtractOptions) -> Result<Expectation, ExtractError> {
-    let faces = crate::faces::derive(model)?.value;
-    let mesh = level::panelize(&faces, options.density, (0, options.most_panels()), &mut Vec::new())?;
-    let coarse = mesh.panels.len();
-    let panels = 2 * coarse;
-    // With open interfaces the coarse mesh is solved twice, to see what their truncation does.
-    let coarse_solves = if mesh.truncation.is_some() { 2.0 } else { 1.0 };
-    Ok(Expectation {
-        panels,
-        memory: ExtractOptions::memory_of(panels),
-        seconds: coarse_solves * options.seconds_of(coarse) + options.seconds_of(panels),
-        allowed: options.panels_that_fit(),
-    })
 }

@@ -47,9 +47,21 @@ pub fn refine(
     warnings: &mut Vec<Warning>,
     progress: &(dyn Fn(Progress) + Sync),
 ) -> Result<Refinement, ExtractError> {
+    let coarsest = level::panelize(faces, options.density, options.most_panels(), warnings)?;
+    refine_from(faces, coarsest, accuracy, options, warnings, progress)
+}
+
+/// As [`refine`], with the coarsest mesh at hand.
+pub(crate) fn refine_from(
+    faces: &Faces,
+    mut mesh: Mesh,
+    accuracy: Accuracy,
+    options: &ExtractOptions,
+    warnings: &mut Vec<Warning>,
+    progress: &(dyn Fn(Progress) + Sync),
+) -> Result<Refinement, ExtractError> {
     let allowed = options.panels_that_fit();
     let mut density = options.density;
-    let mut mesh = level::panelize(faces, density, (0, options.most_panels()), warnings)?;
     let coarsest = mesh.panels.len();
     let too_large = || ExtractError::TooLarge {
         panels: 2 * coarsest,
@@ -66,38 +78,35 @@ pub fn refine(
     };
     let mut levels = vec![solved(&mesh, 1)?];
     let inner = inner_part(&mesh).map(|inner| solved(&inner, 1)).transpose()?;
-    let bars = |levels: &[Level]| {
+    let bars_of = |levels: &[Level]| {
         let steps: Vec<Step<'_>> = levels.iter().map(|level| (&level.results, level.count.panels)).collect();
         let moved = inner.as_ref().map(|inner| (&levels[0].results, &inner.results));
         let residual = levels.last().map_or(0.0, |level| level.info.relative_residual);
         error_bar::bars(&steps, moved, OtherParts { chord: options.chord_share, residual })
     };
-    let mut stopped_by = None;
-    loop {
-        let good =
-            |fine: &Level| fine.checks_hold() && error_bar::meets(&fine.results, &bars(&levels), accuracy);
+    let (bars, target_met) = loop {
+        let bars = bars_of(&levels);
+        let good = |fine: &Level| fine.checks_hold() && error_bar::meets(&fine.results, &bars, accuracy);
         if levels.len() >= 2 && levels.last().is_some_and(good) {
-            break;
+            break (bars, true);
         }
         let before = (mesh.panels.len(), levels.len());
         let Some(finer) = finer(faces, before, &mut density, options)? else {
-            stopped_by = Some(format!("{allowed} panels fit into the memory or the limit given"));
-            break;
+            break (bars, false);
         };
         mesh = finer;
         levels.push(solved(&mesh, levels.len() + 1)?);
-    }
+    };
     if levels.len() < 2 {
         return Err(too_large());
     }
-    if let Some(reason) = &stopped_by {
+    if !target_met {
         let text = format!(
-            "the error bars did not reach the target of {} %: {reason}; ask for less accuracy, model a smaller region, or allow more panels",
+            "the error bars did not reach the target of {} %: {allowed} panels fit into the memory or the limit given; ask for less accuracy, model a smaller region, or allow more panels",
             100.0 * accuracy.target
         );
         warnings.push(Warning::new(text, Origin::default()));
     }
-    let bars = bars(&levels);
     let seconds = sum_seconds(levels.iter().chain(&inner));
     let n_levels = levels.len();
     let finest = levels.swap_remove(n_levels - 1);
@@ -106,7 +115,7 @@ pub fn refine(
         bars,
         count: MeshCount { levels: n_levels, ..finest.count },
         info: finest.info,
-        target_met: stopped_by.is_none(),
+        target_met,
         seconds,
     })
 }
@@ -122,23 +131,32 @@ fn finer(
     let fits = |mesh: &Mesh| mesh.panels.len() <= options.panels_that_fit();
     #[expect(clippy::cast_precision_loss, reason = "panel counts are far below 2^53")]
     let grown = |mesh: &Mesh| mesh.panels.len() as f64 >= LEAST_GROWTH * n_panels as f64;
+    let mut tried = *density;
+    let mut ungrown = Vec::with_capacity(MOST_TRIES);
+    for _ in 0..MOST_TRIES {
+        tried *= DENSITY_RATIO;
+        let mesh = match level::panelize(faces, tried, options.most_panels(), &mut Vec::new()) {
+            Err(ExtractError::Mesh(crate::mesh::MeshError::TooMany { .. })) => return Ok(None),
+            other => other?,
+        };
+        if !fits(&mesh) {
+            return Ok(None);
+        }
+        if grown(&mesh) {
+            *density = tried;
+            return Ok(Some(mesh));
+        }
+        ungrown.push((tried, mesh));
+    }
     // A model of smooth faces only has nothing that grading could refine.
-    for halvings in [0, level] {
-        let mut tried = *density;
-        for _ in 0..MOST_TRIES {
-            tried *= DENSITY_RATIO;
-            let mesh = match level::panelize(faces, tried, (halvings, options.most_panels()), &mut Vec::new())
-            {
-                Err(ExtractError::Mesh(crate::mesh::MeshError::TooMany { .. })) => return Ok(None),
-                other => other?,
-            };
-            if !fits(&mesh) {
-                return Ok(None);
-            }
-            if grown(&mesh) {
-                *density = tried;
-                return Ok(Some(mesh));
-            }
+    for (tried, mesh) in ungrown {
+        let mesh = level::halve_smooth(mesh, faces, level);
+        if !fits(&mesh) {
+            return Ok(None);
+        }
+        if grown(&mesh) {
+            *density = tried;
+            return Ok(Some(mesh));
         }
     }
     Ok(None)
