@@ -9,7 +9,7 @@ use crate::faces::{EdgeGrade, Faces};
 use crate::geom::PanelShape;
 use crate::job::Accuracy;
 use crate::mesh::{Mesh, MeshOptions, PanelId, PanelKind, SplitDirection};
-use crate::results::{CheckOutcome, Results};
+use crate::results::Results;
 use crate::solve::SolveInfo;
 
 /// One solved mesh.
@@ -25,16 +25,11 @@ pub(crate) struct Level {
     pub(crate) seconds: Vec<(&'static str, f64)>,
 }
 
-/// A check may fail by this many times the accuracy asked for: its defect adds up the errors of several charges.
-const CHECK_ALLOWANCE: f64 = 4.0;
-
 impl Level {
     /// Raises the thresholds of the checks to what an answer at this accuracy may show.
     pub(crate) fn allow(&mut self, accuracy: Accuracy) {
         for check in &mut self.results.checks {
-            if let CheckOutcome::Made { threshold, .. } = &mut check.outcome {
-                *threshold = threshold.max(CHECK_ALLOWANCE * accuracy.target);
-            }
+            check.allow(accuracy.target, accuracy.floor);
         }
     }
 

@@ -274,7 +274,14 @@ fn check(check: &Check) -> CheckLine<'_> {
         }
         CheckOutcome::NotApplicable(why) => (None, None, Some(why.as_str())),
     };
-    CheckLine { name: &check.name, meaning: &check.meaning, value, threshold, passed: check.passed(), why }
+    CheckLine {
+        name: check.kind.name(),
+        meaning: check.kind.meaning(),
+        value,
+        threshold,
+        passed: check.passed(),
+        why,
+    }
 }
 
 fn solver(x: &Extraction) -> SolverLine<'_> {

@@ -5,7 +5,7 @@ use crate::extract::{Bars, DefaultedNets, Dielectric, Extraction, MeshCount, Sol
 use crate::faces::{FaceGroup, GroupId, GroupKind};
 use crate::job::Accuracy;
 use crate::net::{ModelNet, NameSource, NetId, Role};
-use crate::results::{Check, CheckOutcome, GroupCharge, Results};
+use crate::results::{Check, CheckKind, CheckOutcome, GroupCharge, Results};
 use faer::{Mat, mat};
 
 fn net(name: &str, role: Role, cut: bool) -> ModelNet {
@@ -37,13 +37,11 @@ fn results() -> Results {
         ],
         checks: vec![
             Check {
-                name: "reciprocity".to_owned(),
-                meaning: "C_ij against C_ji".to_owned(),
+                kind: CheckKind::Reciprocity,
                 outcome: CheckOutcome::Made { value: 2e-4, threshold: 1e-2 },
             },
             Check {
-                name: "neutrality".to_owned(),
-                meaning: "bound charge of each finite body".to_owned(),
+                kind: CheckKind::Neutrality,
                 outcome: CheckOutcome::NotApplicable("the model has no finite body".to_owned()),
             },
         ],

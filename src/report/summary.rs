@@ -177,7 +177,7 @@ fn checks(text: &mut String, x: &Extraction) {
                 }
                 CheckOutcome::NotApplicable(why) => ("-", format!("not applicable: {why}")),
             };
-            vec![format!("{word:<6}  {}", check.name), format!("{what} ({})", check.meaning)]
+            vec![format!("{word:<6}  {}", check.kind), format!("{what} ({})", check.kind.meaning())]
         })
         .collect();
     let width = table.iter().map(|row| row[0].chars().count()).max().unwrap_or(0);

@@ -3,12 +3,14 @@
 //! Floating nets are settled here: their potentials follow from their free charge by superposition.
 
 mod capacitance;
+mod check;
 mod checks;
 mod error;
 mod free_charge;
 mod groups;
 mod tail;
 
+pub use check::{Check, CheckKind, CheckOutcome};
 pub use error::ResultsError;
 
 use crate::mesh::Mesh;
@@ -103,43 +105,4 @@ pub struct GroupCharge {
     /// Analytic rest of the bound charge from the end of the extent to infinity, per row excitation, C; `None` for a
     /// group that ends inside the model.
     pub tail: Option<Vec<f64>>,
-}
-
-/// A physical self-check.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Check {
-    /// Stable name for `result.json`.
-    pub name: String,
-    /// What it compares, for people.
-    pub meaning: String,
-    /// Its value and what follows from it.
-    pub outcome: CheckOutcome,
-}
-
-/// The outcome of a check.
-#[derive(Debug, Clone, PartialEq)]
-pub enum CheckOutcome {
-    /// It was made.
-    Made {
-        /// The measured defect, a ratio.
-        value: f64,
-        /// Largest defect that passes.
-        threshold: f64,
-    },
-    /// It says nothing about this model.
-    NotApplicable(
-        /// Why.
-        String,
-    ),
-}
-
-impl Check {
-    /// Whether the check passed; `None` when it does not apply.
-    #[must_use]
-    pub fn passed(&self) -> Option<bool> {
-        match self.outcome {
-            CheckOutcome::Made { value, threshold } => Some(value <= threshold),
-            CheckOutcome::NotApplicable(_) => None,
-        }
-    }
 }
