@@ -5,7 +5,7 @@ use std::collections::BTreeMap;
 use crate::artwork::{Artwork, Hole, Lining};
 use crate::cli::pipeline::Model;
 use crate::cli::sources::Sources;
-use crate::extract::{self, ExtractOptions};
+use crate::extract::{self, Expectation, ExtractOptions};
 use crate::geom::Region;
 use crate::job::{Layer, LayerId, LayerKind, Stackup};
 use crate::net::{NameSource, NetId, Role};
@@ -30,7 +30,7 @@ pub(crate) fn inspect(model: &Model, options: &ExtractOptions, sources: &Sources
         .collect();
     let cost = extract::prepare(&model.slabs, options)
         .map(|prepared| prepared.expectation(options))
-        .map(|e| Cost { panels: e.panels, memory: e.memory, seconds: e.seconds })
+        .map(cost)
         .map_err(|error| error.to_string());
     Inspection {
         title: model.plan.job.title.clone(),
@@ -41,6 +41,12 @@ pub(crate) fn inspect(model: &Model, options: &ExtractOptions, sources: &Sources
         cost,
         warnings: model.warnings.iter().map(|warning| sources.warning(warning)).collect(),
     }
+}
+
+/// What the reports say of an expectation.
+pub(crate) fn cost(expected: Expectation) -> Cost {
+    let Expectation { panels, memory, seconds, moves_border, .. } = expected;
+    Cost { panels, memory, seconds, moves_border }
 }
 
 /// Copper inside the window: layer, net of the artwork, region.

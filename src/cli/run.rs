@@ -16,7 +16,6 @@ use crate::cli::sources::Sources;
 use crate::cli::{inspection, memory, output};
 use crate::extract::{self, ExtractOptions, Extraction};
 use crate::job::{SchemaKind, Stackup, schema};
-use crate::report::inspect::Cost;
 use crate::report::{self, Notes, StackupTolerance};
 
 /// How a run that did something ended.
@@ -87,8 +86,7 @@ fn run_extract(job: &Path, out: &Path, quiet: bool, sources: &mut Sources) -> Re
     let options = options();
     let prepared = extract::prepare(&model.slabs, &options)?;
     if !quiet {
-        let expected = prepared.expectation(&options);
-        let cost = Cost { panels: expected.panels, memory: expected.memory, seconds: expected.seconds };
+        let cost = inspection::cost(prepared.expectation(&options));
         say(&format!("to solve: {}\n", cost.line()));
     }
     let line = ProgressLine::new(!quiet);

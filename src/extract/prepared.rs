@@ -1,10 +1,10 @@
-//! What an extraction makes before it solves: the faces and the coarsest mesh. From these follows what it will take.
+//! What an extraction makes before it solves: the faces and the coarsest mesh. From these follows what it will take at least.
 
 use std::time::Instant;
 
 use crate::diag::Warning;
 use crate::extract::error::ExtractError;
-use crate::extract::{ExtractOptions, level};
+use crate::extract::{ExtractOptions, level, sequence};
 use crate::faces::Faces;
 use crate::mesh::Mesh;
 use crate::slab::SlabModel;
@@ -20,15 +20,17 @@ pub struct Prepared {
     pub(crate) faces_seconds: f64,
 }
 
-/// What an extraction is expected to take, up to its second level: the least that gives a bar.
+/// What an extraction takes at least: its first two levels, without which there is no bar.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Expectation {
     /// Panels of the second level.
     pub panels: usize,
     /// Peak memory, bytes.
     pub memory: u64,
-    /// Time, s.
+    /// Time, s: of both levels, and of the third solve when there is one.
     pub seconds: f64,
+    /// Whether the coarse mesh is solved once more with the border of the open interfaces moved in.
+    pub moves_border: bool,
     /// Panels that fit the limits.
     pub allowed: usize,
 }
@@ -47,17 +49,18 @@ pub fn prepare(model: &SlabModel, options: &ExtractOptions) -> Result<Prepared, 
 }
 
 impl Prepared {
-    /// What the extraction will take.
+    /// What the extraction will take at least; a third level, if the target asks for one, takes several times as long.
     #[must_use]
     pub fn expectation(&self, options: &ExtractOptions) -> Expectation {
         let coarse = self.coarsest.panels.len();
         let panels = 2 * coarse;
-        // With open interfaces the coarse mesh is solved twice, to see what their truncation does.
-        let coarse_solves = if self.coarsest.truncation.is_some() { 2.0 } else { 1.0 };
+        let inner = sequence::inner_part(&self.coarsest).map(|inner| inner.panels.len());
+        let solves = [Some(coarse), inner, Some(panels)];
         Expectation {
             panels,
             memory: ExtractOptions::memory_of(panels),
-            seconds: coarse_solves * options.seconds_of(coarse) + options.seconds_of(panels),
+            seconds: solves.into_iter().flatten().map(|n| options.seconds_of(n)).sum(),
+            moves_border: inner.is_some(),
             allowed: options.panels_that_fit(),
         }
     }

@@ -164,7 +164,7 @@ fn finer(
 
 /// The mesh without what lies beyond the border moved in by [`error_bar::BORDER_MOVE`]; `None` when nothing is
 /// truncated.
-fn inner_part(mesh: &Mesh) -> Option<Mesh> {
+pub(crate) fn inner_part(mesh: &Mesh) -> Option<Mesh> {
     let truncation = mesh.truncation?;
     let inside = |x: f64, axis: usize| {
         let moved = (truncation.extent[axis] / error_bar::BORDER_MOVE).max(truncation.copper[axis]);

@@ -77,15 +77,17 @@ pub struct DrillLine {
     pub holes: usize,
 }
 
-/// What solving would take.
+/// What solving would take at least: the first two levels.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Cost {
-    /// Panels.
+    /// Panels of the second level.
     pub panels: usize,
     /// Peak memory, bytes.
     pub memory: u64,
-    /// Time, s.
+    /// Time, s, with that of moving the border when that is done.
     pub seconds: f64,
+    /// Whether one more solve sees what moving the border of the region's open interfaces does.
+    pub moves_border: bool,
 }
 
 #[derive(Serialize)]
@@ -193,9 +195,11 @@ pub fn text(inspection: &Inspection) -> String {
 }
 
 impl Cost {
-    /// "1234 panels, 56 MB, about 3 s".
+    /// "1234 panels, 56 MB, at least 3 s for the first two levels".
     #[must_use]
     pub fn line(&self) -> String {
-        format!("{} panels, {}, about {} s", self.panels, memory(self.memory), significant(self.seconds, 2))
+        let border = if self.moves_border { " and a moved border" } else { "" };
+        let (memory, seconds) = (memory(self.memory), significant(self.seconds, 2));
+        format!("{} panels, {memory}, at least {seconds} s for the first two levels{border}", self.panels)
     }
 }

@@ -186,6 +186,7 @@ fn inspect_lists_what_the_job_draws() {
         text.contains("film") && text.contains("er 7.5 (stackup)") && text.contains("Shorts: none"),
         "{text}"
     );
+    assert!(text.contains(" s for the first two levels and a moved border\n"), "{text}");
 }
 
 #[test]
