@@ -48,6 +48,16 @@ pub enum ExtractError {
         /// Panels that fit.
         allowed: usize,
     },
+    /// A bar needs two meshes, and there is no second.
+    #[error("an answer with an error bar needs two meshes, and the faces get no finer than {panels} panels")]
+    #[diagnostic(
+        code("extract::not_finer"),
+        help("begin at another density: more than 0.2 and less than 50")
+    )]
+    NotFiner {
+        /// Panels of the only mesh.
+        panels: usize,
+    },
     /// Every net is grounded or floating.
     #[error("no net has a row: there is nothing to extract")]
     #[diagnostic(code("extract::no_rows"), help("name at least one net in `rows` of [nets]"))]

@@ -73,13 +73,23 @@ pub(crate) fn bars(steps: &[Step<'_>], moved: Moved<'_>, other: OtherParts) -> B
 
 /// Whether every bar of the matrix satisfies `bar_ij <= target * max(|C_ij|, floor * sqrt(C_ii C_jj))`.
 pub(crate) fn meets(results: &Results, bars: &Bars, accuracy: Accuracy) -> bool {
+    let n = results.maxwell.nrows();
+    (0..n)
+        .all(|i| (0..n).all(|j| bars.maxwell[(i, j)] <= accuracy.target * measure(results, accuracy, (i, j))))
+}
+
+/// Row, column and size of the bar that is widest against `max(|C_ij|, floor * sqrt(C_ii C_jj))`.
+pub(crate) fn widest(results: &Results, bars: &Bars, accuracy: Accuracy) -> (usize, usize, f64) {
+    let n = results.maxwell.nrows();
+    let relative = |i, j| (i, j, bars.maxwell[(i, j)] / measure(results, accuracy, (i, j)));
+    let all = (0..n).flat_map(|i| (0..n).map(move |j| (i, j))).map(|(i, j)| relative(i, j));
+    all.max_by(|a, b| a.2.total_cmp(&b.2)).unwrap_or((0, 0, 0.0))
+}
+
+/// What the bar of an entry is measured by, F.
+fn measure(results: &Results, accuracy: Accuracy, (i, j): (usize, usize)) -> f64 {
     let c = &results.maxwell;
-    (0..c.nrows()).all(|i| {
-        (0..c.ncols()).all(|j| {
-            let scale = c[(i, j)].abs().max(accuracy.floor * (c[(i, i)] * c[(j, j)]).abs().sqrt());
-            bars.maxwell[(i, j)] <= accuracy.target * scale
-        })
-    })
+    c[(i, j)].abs().max(accuracy.floor * (c[(i, i)] * c[(j, j)]).abs().sqrt())
 }
 
 fn levels(steps: &[Step<'_>], get: &dyn Fn(&Results) -> f64) -> f64 {

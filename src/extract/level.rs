@@ -32,11 +32,6 @@ impl Level {
             check.allow(accuracy.target, accuracy.floor);
         }
     }
-
-    /// Whether no physical check failed.
-    pub(crate) fn checks_hold(&self) -> bool {
-        self.results.checks.iter().all(|check| check.passed() != Some(false))
-    }
 }
 
 /// Panels the faces at `density`; warnings are appended to `warnings`.

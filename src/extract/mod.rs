@@ -7,6 +7,7 @@ mod level;
 mod options;
 mod prepared;
 mod sequence;
+mod stop;
 
 use crate::diag::Warning;
 use crate::faces::FaceGroup;
@@ -17,9 +18,10 @@ use crate::slab::SlabModel;
 use faer::Mat;
 
 pub use error::ExtractError;
-pub use options::ExtractOptions;
+pub use options::{ExtractOptions, Limit};
 pub use prepared::{Expectation, Prepared, prepare};
 pub use sequence::{Refinement, refine};
+pub use stop::{NoFiner, Stop, Unmet};
 
 /// Speed of light in vacuum, m/s: exact by the definition of the metre.
 const SPEED_OF_LIGHT: f64 = 299_792_458.0;
@@ -43,7 +45,7 @@ pub struct Progress {
 ///
 /// # Errors
 /// [`ExtractError::NoRows`] when no net has a row; [`ExtractError::TooLarge`] when two levels do not fit the limits;
-/// otherwise what the stages report.
+/// [`ExtractError::NotFiner`] when the faces give one mesh only; otherwise what the stages report.
 pub fn extract(
     model: &SlabModel,
     job: &Job,
@@ -91,7 +93,7 @@ pub fn extract_prepared(
             peak_memory: None,
         },
         results: refined.results,
-        target_met: refined.target_met,
+        target_met: refined.stopped.is_none(),
         accuracy: job.accuracy,
         quasi_static_limit: quasi_static_limit(model),
         frequency: job.frequency,
@@ -149,7 +151,7 @@ pub struct Extraction {
     pub mesh: MeshCount,
     /// How it was solved.
     pub solver: SolverReport,
-    /// Whether every bar met the target.
+    /// Whether every bar met the target and no physical check failed; if not, a warning says what stopped the refinement.
     pub target_met: bool,
     /// The rule for the bars.
     pub accuracy: Accuracy,

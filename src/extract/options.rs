@@ -36,18 +36,38 @@ impl Default for ExtractOptions {
     }
 }
 
+/// What bounds the panels of one mesh.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Limit {
+    /// [`ExtractOptions::max_memory`].
+    Memory,
+    /// [`ExtractOptions::max_panels`].
+    Panels,
+}
+
 impl ExtractOptions {
-    /// Panels whose dense solve fits both limits.
-    #[must_use]
+    /// Panels whose dense solve fits the memory.
     #[expect(
         clippy::cast_precision_loss,
         clippy::cast_possible_truncation,
         clippy::cast_sign_loss,
         reason = "an estimate of a positive number"
     )]
-    pub fn panels_that_fit(&self) -> usize {
+    fn panels_in_memory(&self) -> usize {
         let bytes = self.max_memory.saturating_sub(BYTES_BESIDES) as f64;
-        ((bytes / BYTES_PER_ENTRY).sqrt() as usize).min(self.max_panels)
+        (bytes / BYTES_PER_ENTRY).sqrt() as usize
+    }
+
+    /// Panels whose dense solve fits both limits.
+    #[must_use]
+    pub fn panels_that_fit(&self) -> usize {
+        self.panels_in_memory().min(self.max_panels)
+    }
+
+    /// The limit that decides how many panels fit.
+    #[must_use]
+    pub fn limit(&self) -> Limit {
+        if self.panels_in_memory() < self.max_panels { Limit::Memory } else { Limit::Panels }
     }
 
     /// Panels at which making a mesh is given up: enough above what fits to say how far off it was.

@@ -4,10 +4,11 @@ use crate::diag::{Origin, Warning};
 use crate::extract::error::ExtractError;
 use crate::extract::error_bar::{self, OtherParts, Step};
 use crate::extract::level::{self, Level};
+use crate::extract::stop::{self, NoFiner, Stop};
 use crate::extract::{Bars, ExtractOptions, MeshCount, Progress};
 use crate::faces::Faces;
 use crate::job::Accuracy;
-use crate::mesh::Mesh;
+use crate::mesh::{Mesh, MeshError};
 use crate::results::Results;
 use crate::solve::SolveInfo;
 
@@ -29,8 +30,8 @@ pub struct Refinement {
     pub count: MeshCount,
     /// How well the finest mesh was solved.
     pub info: SolveInfo,
-    /// Whether every bar met the target.
-    pub target_met: bool,
+    /// What stopped it before every bar met the target and every check passed; `None` when all is well.
+    pub stopped: Option<Stop>,
     /// Stage and seconds, summed over every solve.
     pub seconds: Vec<(String, f64)>,
 }
@@ -39,7 +40,8 @@ pub struct Refinement {
 /// is appended to `warnings`.
 ///
 /// # Errors
-/// [`ExtractError::TooLarge`] when fewer than two levels fit; otherwise what the stages report.
+/// [`ExtractError::TooLarge`] when fewer than two levels fit, [`ExtractError::NotFiner`] when the faces give one only;
+/// otherwise what the stages report.
 pub fn refine(
     faces: &Faces,
     accuracy: Accuracy,
@@ -60,16 +62,11 @@ pub(crate) fn refine_from(
     warnings: &mut Vec<Warning>,
     progress: &(dyn Fn(Progress) + Sync),
 ) -> Result<Refinement, ExtractError> {
-    let allowed = options.panels_that_fit();
     let mut density = options.density;
-    let coarsest = mesh.panels.len();
-    let too_large = || ExtractError::TooLarge {
-        panels: 2 * coarsest,
-        needed: ExtractOptions::memory_of(2 * coarsest),
-        allowed,
-    };
+    let (coarsest, allowed) = (mesh.panels.len(), options.panels_that_fit());
     if coarsest > allowed {
-        return Err(too_large());
+        let needed = ExtractOptions::memory_of(2 * coarsest);
+        return Err(ExtractError::TooLarge { panels: 2 * coarsest, needed, allowed });
     }
     let solved = |mesh: &Mesh, number| {
         let mut level = level::solve(mesh, number, progress)?;
@@ -84,29 +81,24 @@ pub(crate) fn refine_from(
         let residual = levels.last().map_or(0.0, |level| level.info.relative_residual);
         error_bar::bars(&steps, moved, OtherParts { chord: options.chord_share, residual })
     };
-    let (bars, target_met) = loop {
+    let (bars, stopped) = loop {
         let bars = bars_of(&levels);
-        let good = |fine: &Level| fine.checks_hold() && error_bar::meets(&fine.results, &bars, accuracy);
-        if levels.len() >= 2 && levels.last().is_some_and(good) {
-            break (bars, true);
+        let unmet = match levels.as_slice() {
+            [.., _, fine] => stop::unmet(fine, &bars, accuracy, &faces.nets),
+            _ => None,
+        };
+        if levels.len() >= 2 && unmet.is_none() {
+            break (bars, None);
         }
         let before = (mesh.panels.len(), levels.len());
-        let Some(finer) = finer(faces, before, &mut density, options)? else {
-            break (bars, false);
-        };
-        mesh = finer;
+        match (finer(faces, before, &mut density, options)?, unmet) {
+            (Ok(finer), _) => mesh = finer,
+            (Err(cause), Some(unmet)) => break (bars, Some(Stop { unmet, cause })),
+            (Err(cause), None) => return Err(cause.after_one_level()),
+        }
         levels.push(solved(&mesh, levels.len() + 1)?);
     };
-    if levels.len() < 2 {
-        return Err(too_large());
-    }
-    if !target_met {
-        let text = format!(
-            "the error bars did not reach the target of {} %: {allowed} panels fit into the memory or the limit given; ask for less accuracy, model a smaller region, or allow more panels",
-            100.0 * accuracy.target
-        );
-        warnings.push(Warning::new(text, Origin::default()));
-    }
+    warnings.extend(stopped.iter().map(|stop| Warning::new(stop.to_string(), Origin::default())));
     let seconds = sum_seconds(levels.iter().chain(&inner));
     let n_levels = levels.len();
     let finest = levels.swap_remove(n_levels - 1);
@@ -115,20 +107,21 @@ pub(crate) fn refine_from(
         bars,
         count: MeshCount { levels: n_levels, ..finest.count },
         info: finest.info,
-        target_met,
+        stopped,
         seconds,
     })
 }
 
-/// The mesh after one of `n_panels` panels at this level, with at least [`LEAST_GROWTH`] times as many; `None` when it
-/// would not fit, or when the faces do not get finer.
+/// The mesh after one of `n_panels` panels at this level, with at least [`LEAST_GROWTH`] times as many, or why there is
+/// none.
 fn finer(
     faces: &Faces,
     (n_panels, level): (usize, usize),
     density: &mut f64,
     options: &ExtractOptions,
-) -> Result<Option<Mesh>, ExtractError> {
-    let fits = |mesh: &Mesh| mesh.panels.len() <= options.panels_that_fit();
+) -> Result<Result<Mesh, NoFiner>, ExtractError> {
+    let (fits, limit) = (options.panels_that_fit(), options.limit());
+    let no_room = |panels, at_least| Ok(Err(NoFiner::Room { panels, at_least, fits, limit }));
     #[expect(clippy::cast_precision_loss, reason = "panel counts are far below 2^53")]
     let grown = |mesh: &Mesh| mesh.panels.len() as f64 >= LEAST_GROWTH * n_panels as f64;
     let mut tried = *density;
@@ -136,30 +129,34 @@ fn finer(
     for _ in 0..MOST_TRIES {
         tried *= DENSITY_RATIO;
         let mesh = match level::panelize(faces, tried, options.most_panels(), &mut Vec::new()) {
-            Err(ExtractError::Mesh(crate::mesh::MeshError::TooMany { .. })) => return Ok(None),
+            Err(ExtractError::Mesh(MeshError::TooMany { needed, at_least, .. })) => {
+                return no_room(needed, at_least);
+            }
+            // Denser than a mesh may be.
+            Err(ExtractError::Mesh(MeshError::BadDensity { .. })) => break,
             other => other?,
         };
-        if !fits(&mesh) {
-            return Ok(None);
+        if mesh.panels.len() > fits {
+            return no_room(mesh.panels.len(), false);
         }
         if grown(&mesh) {
             *density = tried;
-            return Ok(Some(mesh));
+            return Ok(Ok(mesh));
         }
         ungrown.push((tried, mesh));
     }
     // A model of smooth faces only has nothing that grading could refine.
     for (tried, mesh) in ungrown {
         let mesh = level::halve_smooth(mesh, faces, level);
-        if !fits(&mesh) {
-            return Ok(None);
+        if mesh.panels.len() > fits {
+            return no_room(mesh.panels.len(), false);
         }
         if grown(&mesh) {
             *density = tried;
-            return Ok(Some(mesh));
+            return Ok(Ok(mesh));
         }
     }
-    Ok(None)
+    Ok(Err(NoFiner::Faces { panels: n_panels }))
 }
 
 /// The mesh without what lies beyond the border moved in by [`error_bar::BORDER_MOVE`]; `None` when nothing is

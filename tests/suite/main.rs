@@ -15,4 +15,5 @@ mod pipeline;
 mod references;
 mod slab;
 mod solids;
+mod stops;
 mod tidy;
