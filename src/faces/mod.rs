@@ -33,7 +33,7 @@ pub use error::FacesError;
 /// # Errors
 /// - [`FacesError::Short`] when metal of two nets touches.
 /// - [`FacesError::InfiniteCell`] when a half-space holds a cell.
-/// - [`FacesError::LeaningWall`] when foot and top of a leaning wall meet different cells.
+/// - [`FacesError::LeaningWall`] when foot and top of a leaning wall meet different cells, rounding apart.
 /// - [`FacesError::NoMetal`] when there is no conductor face at all.
 pub fn derive(model: &SlabModel) -> Result<Warned<Faces>, FacesError> {
     let conformed = conform(model)?;

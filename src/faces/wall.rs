@@ -10,7 +10,8 @@ use crate::faces::rule::{Verdict, verdict};
 use crate::faces::{EdgeGrade, FacesError, Ring};
 use crate::geom::Vec3;
 use crate::geom::region::{Point, Region};
-use crate::geom::snap::{Run, SnapRing, alike, left_of, runs};
+use crate::geom::snap::SnapRing;
+use crate::geom::strip::{Strip, left_of, runs, strips};
 use crate::net::NetId;
 use crate::slab::{Fill, Place, SlabModel};
 use std::collections::{BTreeMap, HashMap, HashSet};
@@ -30,18 +31,11 @@ struct WallSlab<'a> {
     sharp: HashSet<Point>,
 }
 
-/// A piece of wall with one neighbour: its foot and its top, as seen along the ring.
-struct Piece {
-    foot: Vec<Point>,
-    top: Vec<Point>,
-    neighbour: Option<usize>,
-}
-
 /// Adds every wall to `out`.
 ///
 /// # Errors
 /// [`FacesError::Short`] when metal of two nets touches, [`FacesError::LeaningWall`] when the foot and the top of a
-/// leaning wall do not meet the same cells.
+/// leaning wall do not meet the same cells, rounding apart.
 pub(crate) fn wall_faces(
     model: &SlabModel,
     conformed: &Conformed,
@@ -62,15 +56,14 @@ pub(crate) fn wall_faces(
             above: levels.get(j),
             sharp: sharp_metal(cells),
         };
+        // Beside one leaning cell an upright one may meet others at its top than at its foot.
+        let leaning = cells.iter().any(|cell| cell.leaning);
         for (idx, cell) in cells.iter().enumerate() {
             for (foot, top) in cell.bottom.iter().zip(&cell.top) {
-                let pieces = if cell.leaning {
-                    slab.leaning_pieces(foot, top)?
-                } else {
-                    slab.upright_pieces(&foot.points)
-                };
+                let pieces =
+                    if leaning { slab.leaning_pieces(foot, top)? } else { slab.upright_pieces(&foot.points) };
                 for piece in pieces {
-                    if piece.neighbour.is_none_or(|other| idx < other) {
+                    if piece.neighbour.is_none_or(|other| owns(cells, idx, other)) {
                         slab.add(idx, &piece, out)?;
                     }
                 }
@@ -78,6 +71,13 @@ pub(crate) fn wall_faces(
         }
     }
     Ok(())
+}
+
+/// Whether the wall between two cells is the first one's to make. All around metal it is the metal's, so that its skin is
+/// closed whatever rounding has done to its neighbours.
+fn owns(cells: &[CellOutline], idx: usize, other: usize) -> bool {
+    let rank = |k: usize| (!matches!(cells[k].fill, Fill::Metal(_)), k);
+    rank(idx) < rank(other)
 }
 
 /// Convex corners of each net's metal, cells of one net united.
@@ -102,7 +102,7 @@ fn sharp_metal(cells: &[CellOutline]) -> HashSet<Point> {
 
 impl WallSlab<'_> {
     /// Maximal straight runs with one neighbour.
-    fn upright_pieces(&self, ring: &[Point]) -> Vec<Piece> {
+    fn upright_pieces(&self, ring: &[Point]) -> Vec<Strip> {
         let n = ring.len();
         let next = |k: usize| ring[(k + 1) % n];
         let across = |k: usize| self.foot.get(&(next(k), ring[k])).copied();
@@ -118,32 +118,26 @@ impl WallSlab<'_> {
             let foot: Vec<Point> = (0..=steps).map(|k| ring[(start + k) % n]).collect();
             let border = along_border(foot[0], foot[steps], &self.model.extent);
             if !border {
-                pieces.push(Piece { top: foot.clone(), foot, neighbour: across(start) });
+                pieces.push(Strip { top: foot.clone(), foot, neighbour: across(start) });
             }
         }
         pieces
     }
 
-    /// One piece per original edge and neighbour; foot and top must meet the same neighbours in the same order.
-    fn leaning_pieces(&self, foot: &SnapRing, top: &SnapRing) -> Result<Vec<Piece>, FacesError> {
-        let feet = runs(foot, &self.foot);
-        let tops = runs(top, &self.top);
-        if !alike(&feet, &tops) {
+    /// One piece per original edge and neighbour.
+    fn leaning_pieces(&self, foot: &SnapRing, top: &SnapRing) -> Result<Vec<Strip>, FacesError> {
+        let Some(mut pieces) = strips(&runs(foot, &self.foot), &runs(top, &self.top)) else {
             let at = foot.points.first().copied().unwrap_or(self.model.extent.lo);
             let slab = self.model.slabs[self.j].name.clone();
             return Err(FacesError::LeaningWall { slab, place: Place::new(self.model.grid, at) });
-        }
+        };
         let extent = &self.model.extent;
-        let border = |run: &Run| along_border(run.points[0], run.points[run.points.len() - 1], extent);
-        Ok(feet
-            .into_iter()
-            .zip(tops)
-            .filter(|(foot, top)| !(border(foot) && border(top)))
-            .map(|(foot, top)| Piece { foot: foot.points, top: top.points, neighbour: foot.neighbour })
-            .collect())
+        let border = |way: &[Point]| along_border(way[0], way[way.len() - 1], extent);
+        pieces.retain(|piece| !(border(&piece.foot) && border(&piece.top)));
+        Ok(pieces)
     }
 
-    fn add(&self, idx: usize, piece: &Piece, out: &mut Assembly<'_>) -> Result<(), FacesError> {
+    fn add(&self, idx: usize, piece: &Strip, out: &mut Assembly<'_>) -> Result<(), FacesError> {
         let slab = &self.model.slabs[self.j];
         let inside = self.cells[idx].fill;
         let outside = piece.neighbour.map_or(Fill::Dielectric(slab.background), |k| self.cells[k].fill);
@@ -171,7 +165,7 @@ impl WallSlab<'_> {
     }
 
     /// Corners and grades of a wall, counter-clockwise seen from outside of its cell.
-    fn outline(&self, piece: &Piece, out: &Assembly<'_>) -> (Vec<Vec3>, Vec<EdgeGrade>) {
+    fn outline(&self, piece: &Strip, out: &Assembly<'_>) -> (Vec<Vec3>, Vec<EdgeGrade>) {
         let slab = &self.model.slabs[self.j];
         let chain = |points: &[Point], level: Option<&Level>| {
             let grade = |w: &[Point]| level.map_or(EdgeGrade::Smooth, |level| level.grade(w[0], w[1]));

@@ -4,6 +4,7 @@ pub mod offset;
 pub mod panel_shape;
 pub mod region;
 pub mod snap;
+pub mod strip;
 
 pub use panel_shape::PanelShape;
 pub use region::{Contour, Grid, Point, Region};

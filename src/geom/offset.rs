@@ -110,6 +110,15 @@ impl Region {
         Region::from_shapes(self.shapes().iter().zip(other.shapes()).map(shape).collect())
     }
 
+    /// The same shapes with each ring's corners given anew, in the order of [`Region::contours`].
+    #[must_use]
+    pub fn with_corners(&self, rings: impl IntoIterator<Item = Contour>) -> Region {
+        let mut rings = rings.into_iter();
+        let shape =
+            |shape: &Shape| shape.iter().map(|old| rings.next().unwrap_or_else(|| old.clone())).collect();
+        Region::from_shapes(self.shapes().iter().map(shape).collect())
+    }
+
     /// `other` with its shapes, rings and corners put into the order of this region's, so that corner k of one
     /// belongs to corner k of the other; `None` unless both have the same rings with as many corners and each
     /// corner's partner lies within `reach` steps.
@@ -178,10 +187,6 @@ fn aligned_ring(ring: &Contour, other: &Contour, reach: f64) -> Option<Contour> 
     if n != other.len() {
         return None;
     }
-    let distance = |p: Point, q: Point| {
-        let (x, y) = vector(p, q);
-        x.hypot(y)
-    };
     let first =
         (0..n).min_by(|a, b| distance(ring[0], other[*a]).total_cmp(&distance(ring[0], other[*b])))?;
     let turned: Contour = (0..n).map(|k| other[(first + k) % n]).collect();
@@ -206,12 +211,19 @@ fn vector(a: Point, b: Point) -> (f64, f64) {
 /// Length of a ring, steps.
 #[must_use]
 pub fn length(ring: &[Point]) -> f64 {
-    (0..ring.len())
-        .map(|k| {
-            let (x, y) = vector(ring[k], ring[(k + 1) % ring.len()]);
-            x.hypot(y)
-        })
-        .sum()
+    let closing = ring.last().zip(ring.first()).map_or(0.0, |(last, first)| distance(*last, *first));
+    length_of_way(ring) + closing
+}
+
+/// Length of an open chain of corners, steps.
+#[must_use]
+pub fn length_of_way(way: &[Point]) -> f64 {
+    way.windows(2).map(|pair| distance(pair[0], pair[1])).sum()
+}
+
+fn distance(a: Point, b: Point) -> f64 {
+    let (x, y) = vector(a, b);
+    x.hypot(y)
 }
 
 fn moved_ring(ring: &Contour, by: f64) -> Option<Contour> {

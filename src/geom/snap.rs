@@ -60,55 +60,6 @@ pub fn snap(outlines: &mut [Outline], n_levels: usize) {
     }
 }
 
-/// A run of edges of one original edge with one neighbour.
-#[derive(Debug, Clone, PartialEq, Eq)]
-pub struct Run {
-    /// The original edge.
-    pub source: u32,
-    /// What lies across, by the numbers of [`left_of`]; `None`: nothing listed there.
-    pub neighbour: Option<usize>,
-    /// The corners, both ends included.
-    pub points: Vec<Point>,
-}
-
-/// What lies left of each directed edge: the number of the set of rings that it belongs to.
-pub fn left_of<'a>(sets: impl Iterator<Item = &'a [SnapRing]>) -> HashMap<(Point, Point), usize> {
-    let mut left = HashMap::new();
-    for (idx, rings) in sets.enumerate() {
-        for ring in rings {
-            for (k, a) in ring.points.iter().enumerate() {
-                left.insert((*a, ring.points[(k + 1) % ring.points.len()]), idx);
-            }
-        }
-    }
-    left
-}
-
-/// The runs of `ring`, in order; the first one starts at the ring's first corner.
-#[must_use]
-pub fn runs<S: std::hash::BuildHasher>(
-    ring: &SnapRing,
-    left: &HashMap<(Point, Point), usize, S>,
-) -> Vec<Run> {
-    let n = ring.points.len();
-    let mut runs: Vec<Run> = Vec::new();
-    for k in 0..n {
-        let (a, b) = (ring.points[k], ring.points[(k + 1) % n]);
-        let neighbour = left.get(&(b, a)).copied();
-        match runs.last_mut() {
-            Some(run) if run.source == ring.source[k] && run.neighbour == neighbour => run.points.push(b),
-            _ => runs.push(Run { source: ring.source[k], neighbour, points: vec![a, b] }),
-        }
-    }
-    runs
-}
-
-/// Whether two lists of runs come from the same edges and meet the same neighbours.
-#[must_use]
-pub fn alike(a: &[Run], b: &[Run]) -> bool {
-    a.len() == b.len() && a.iter().zip(b).all(|(x, y)| x.source == y.source && x.neighbour == y.neighbour)
-}
-
 fn key(a: Point, b: Point) -> (Point, Point) {
     if (a.x, a.y) <= (b.x, b.y) { (a, b) } else { (b, a) }
 }

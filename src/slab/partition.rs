@@ -7,7 +7,8 @@ use crate::artwork::{Artwork, Pattern};
 use crate::diag::Warning;
 use crate::geom::offset::length;
 use crate::geom::region::{Bounds, Contour, Region};
-use crate::geom::snap::{Outline, SnapRing, alike, left_of, runs, snap};
+use crate::geom::snap::{Outline, SnapRing, snap};
+use crate::geom::strip::{Run, alike, edge_left_of, left_of, runs};
 use crate::job::{LayerId, Stackup};
 use crate::net::{ModelNet, NetId, Role};
 use crate::slab::coating::{Coat, Reach};
@@ -396,21 +397,47 @@ fn leaning_cells(
         outlines
     };
     let (feet, tops) = (snapped(|cell| &cell.bottom), snapped(|cell| &cell.top));
-    let left_foot = left_of(feet.iter().map(|outline| outline.rings.as_slice()));
-    let left_top = left_of(tops.iter().map(|outline| outline.rings.as_slice()));
+    let cell_at = (left_of(rings_of(&feet)), left_of(rings_of(&tops)));
+    let edge_at = (edge_left_of(rings_of(&feet)), edge_left_of(rings_of(&tops)));
     let mut culprits = BTreeSet::new();
+    let mut corners: Vec<(Contour, Contour)> = Vec::new();
     for (cell, (foot, top)) in cells.iter().zip(feet.iter().zip(&tops)) {
         for (foot, top) in foot.rings.iter().zip(&top.rings) {
-            let (foot, top) = (runs(foot, &left_foot), runs(top, &left_top));
-            if alike(&foot, &top) {
-                continue;
+            let by_edge = (runs(foot, &edge_at.0), runs(top, &edge_at.1));
+            let by_cell = (runs(foot, &cell_at.0), runs(top, &cell_at.1));
+            if alike(&by_edge.0, &by_edge.1) {
+                corners.push((starts(&by_edge.0), starts(&by_edge.1)));
+            } else if alike(&by_cell.0, &by_cell.1) {
+                corners.push((starts(&by_cell.0), starts(&by_cell.1)));
+            } else {
+                let across = by_cell.0.iter().chain(&by_cell.1).filter_map(|run| run.neighbour);
+                let fills = std::iter::once(cell.fill).chain(across.map(|k| cells[k].fill));
+                culprits.extend(fills.filter_map(|fill| match fill {
+                    Fill::Metal(net) => Some(net),
+                    Fill::Dielectric(_) => None,
+                }));
             }
-            let across = foot.iter().chain(&top).filter_map(|run| run.neighbour).map(|k| cells[k].fill);
-            culprits.extend(std::iter::once(cell.fill).chain(across).filter_map(|fill| match fill {
-                Fill::Metal(net) => Some(net),
-                Fill::Dielectric(_) => None,
-            }));
         }
     }
-    if culprits.is_empty() { Ok(cells) } else { Err(culprits) }
+    if culprits.is_empty() { Ok(with_shared_corners(cells, corners)) } else { Err(culprits) }
+}
+
+fn rings_of(outlines: &[Outline]) -> impl Iterator<Item = &[SnapRing]> {
+    outlines.iter().map(|outline| outline.rings.as_slice())
+}
+
+fn starts<T>(runs: &[Run<T>]) -> Contour {
+    runs.iter().map(|run| run.points[0]).collect()
+}
+
+/// `cells` with these corners at the foot and at the top, ring by ring: where a neighbour begins, both cells have a corner,
+/// lest a later rounding at one height part them by a step.
+fn with_shared_corners(mut cells: Vec<Cell>, corners: Vec<(Contour, Contour)>) -> Vec<Cell> {
+    let (feet, tops): (Vec<Contour>, Vec<Contour>) = corners.into_iter().unzip();
+    let (mut feet, mut tops) = (feet.into_iter(), tops.into_iter());
+    for cell in &mut cells {
+        cell.bottom = cell.bottom.with_corners(feet.by_ref());
+        cell.top = cell.top.with_corners(tops.by_ref());
+    }
+    cells
 }

@@ -6,6 +6,7 @@ use super::bench::{
 };
 use chargeskin::faces::FacesError;
 use chargeskin::job::RegionChoice;
+use chargeskin::slab::SlabError;
 use proptest::prelude::{ProptestConfig, Strategy, prop, proptest};
 
 fn three_layer(mask: bool) -> Board {
@@ -41,8 +42,28 @@ fn furnished(mut board: Board, pieces: &[(usize, i64, i64, i64, i64)], round: bo
     board
 }
 
+/// Leaning copper in two layers, with a via through the rim of the first piece, under a mask with an opening.
+fn leaning(pieces: &[(usize, i64, i64, i64, i64)], round: bool, slope: f64, opening: i64) -> Board {
+    let mut board = furnished(three_layer(true), pieces, round);
+    board.stackup.layers[2] = etched_conductor("top", 35.0, slope, 0.0);
+    board.stackup.layers[4] = etched_conductor("mid", 18.0, 180.0 - slope, 0.0);
+    let (cell, x, y, _, _) = pieces[0];
+    let (x, y) = (100 * (cell % 4) as i64 + x, 100 * (cell / 4) as i64 + y);
+    let net = format!("N0{cell}");
+    board
+        .barrel("top", "top", &net, disc(x + 5, y + 5, 4, 9))
+        .opening("mask", rect(opening, opening, opening + 150, opening + 90))
+}
+
+/// 48 cases, or as many as `PROPTEST_CASES` asks for.
+fn few_cases() -> ProptestConfig {
+    let config = ProptestConfig::default();
+    // 256 is the library's own number, which stands for "not asked".
+    ProptestConfig { cases: if config.cases == 256 { 48 } else { config.cases }, ..config }
+}
+
 proptest! {
-    #![proptest_config(ProptestConfig { cases: 48, ..ProptestConfig::default() })]
+    #![proptest_config(few_cases())]
 
     /// What: random rectangles in three layers, bare or under a mask; every conductor and finite body is closed.
     /// Tolerance: rounding of the sums.
@@ -60,27 +81,49 @@ proptest! {
     }
 
     /// What: leaning copper of any shape, with vias, under a mask with an opening. A piece that cannot lean stands
-    /// upright with a warning; walls that meet other parts at foot and top are refused (docs/unsupported.md); all else is closed.
+    /// upright with a warning; all that is built is closed, and nothing is refused.
     #[test]
     fn random_leaning_copper_closes(pieces in pieces(), round: bool, slope in 40.0f64..140.0, opening in 0i64..300) {
-        let mut board = furnished(three_layer(true), &pieces, round);
-        board.stackup.layers[2] = etched_conductor("top", 35.0, slope, 0.0);
-        board.stackup.layers[4] = etched_conductor("mid", 18.0, 180.0 - slope, 0.0);
-        let (cell, x, y, _, _) = pieces[0];
-        let (x, y) = (100 * (cell % 4) as i64 + x, 100 * (cell / 4) as i64 + y);
-        let net = format!("N0{cell}");
-        let board = board
-            .barrel("top", "top", &net, disc(x + 5, y + 5, 4, 9))
-            .opening("mask", rect(opening, opening, opening + 150, opening + 90));
-        // Copper that widens may close a gap; that is a short, and refused.
-        let Ok(model) = board.slabs().map(|warned| warned.value) else { return Ok(()) };
-        match chargeskin::faces::derive(&model) {
-            Ok(faces) => assert_closed_to_a_step(&faces.value),
-            Err(error) => {
-                let known = matches!(error, FacesError::NoMetal | FacesError::LeaningWall { .. });
-                assert!(slope > 90.0 || known, "{error}");
+        match leaning(&pieces, round, slope, opening).slabs() {
+            // Away from 90 deg one of the two layers widens, which may close a gap.
+            Err(errors) => assert!(errors.0.iter().all(|e| matches!(e, SlabError::Short { .. })), "{errors:?}"),
+            Ok(model) => match chargeskin::faces::derive(&model.value) {
+                Ok(faces) => assert_closed_to_a_step(&faces.value),
+                Err(error) => assert!(matches!(error, FacesError::NoMetal), "{error}"),
             }
         }
+    }
+}
+
+/// What: boards that were refused because the edge of a film or an opening, where it crosses a leaning wall, was rounded
+/// to other corners at the top than at the foot. Found by the property above.
+/// Tolerance: a step along the outline. Seen to fail with: `with_shared_corners` left out (the first board is refused).
+#[test]
+fn a_film_across_a_leaning_wall_meets_it_at_both_heights() {
+    let discs = [
+        (10, 19, 15, 11, 41),
+        (6, 7, 28, 45, 25),
+        (12, 18, 29, 46, 10),
+        (6, 27, 16, 20, 29),
+        (15, 17, 18, 29, 43),
+        (3, 13, 28, 42, 13),
+        (6, 14, 6, 24, 27),
+        (4, 26, 4, 30, 45),
+        (9, 21, 9, 32, 19),
+        (11, 24, 9, 28, 11),
+        (4, 23, 23, 36, 11),
+        (6, 22, 23, 20, 25),
+    ];
+    let cases: [(&[_], _, _, _); 3] = [
+        (&[(10, 0, 18, 12, 22)], true, 81.248, 136),
+        (&[(5, 0, 15, 48, 49), (1, 24, 26, 10, 22)], false, 65.321_954_885_759_23, 33),
+        (&discs, true, 89.370_784_077_963_25, 217),
+    ];
+    for (pieces, round, slope, opening) in cases {
+        let (_, faces, warnings) = leaning(pieces, round, slope, opening).build_warned();
+        assert_closed_to_a_step(&faces);
+        let leaning = faces.faces.iter().filter(|f| (1e-3..0.9).contains(&f.normal.z.abs())).count();
+        assert!(leaning > 0, "every wall is upright: {warnings:?}");
     }
 }
 
