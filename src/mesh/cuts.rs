@@ -13,6 +13,10 @@ const SNAP: f64 = 1e-13;
 /// A corner re-entrant by less than this, relative to the extent, counts as straight.
 const STRAIGHT: f64 = 1e-12;
 
+/// Scores are whole multiples of this part of the extent. Cuts of equal worth then stay equal whatever rounding did to them,
+/// and the one that is found first is taken: the same shape is cut in the same way at any size.
+const TIE: f64 = 1e-9;
+
 /// Convex rings that cover the outline; `None` when its rings cross.
 pub(super) fn convex_rings(outline: &Outline) -> Option<Vec<Vec<Corner>>> {
     let mut web = Web::new(outline);
@@ -24,7 +28,7 @@ pub(super) fn convex_rings(outline: &Outline) -> Option<Vec<Vec<Corner>>> {
             continue;
         }
         let cut = web.best_cut(node)?;
-        // Scores are positive, so their bits order as they do.
+        // Scores are not negative, so their bits order as they do.
         let now = cut.score.to_bits();
         if now > key {
             heap.push(Reverse((now, node)));
@@ -216,6 +220,7 @@ impl Web {
                 let back = self.at(k) - self.at(end);
                 let factor = if self.settles_too(end, back) { BOTH } else { factor };
                 let score = hit.distance * factor * self.sharpness(k, -back).max(self.sharpness(end, back));
+                let score = self.rounded(score);
                 return self.points_inside(end, back).then_some(Cut { score, target: Target::Corner(end) });
             }
         }
@@ -223,7 +228,13 @@ impl Web {
         let (d, f) = (hit.direction, (self.at(next) - self.at(hit.edge)) / length);
         let sharp = self.sharpness(k, d).max(1.0 / cross(d, f).abs().max(0.1));
         let score = hit.distance * factor * sharp * if near { 1.6 } else { 1.0 };
-        Some(Cut { score, target: Target::Edge(hit.edge, hit.fraction) })
+        Some(Cut { score: self.rounded(score), target: Target::Edge(hit.edge, hit.fraction) })
+    }
+
+    /// A score without what rounding may have added.
+    fn rounded(&self, score: f64) -> f64 {
+        let unit = TIE * self.extent;
+        (score / unit).round() * unit
     }
 
     fn settles_too(&self, k: usize, d: P2) -> bool {
@@ -251,7 +262,7 @@ impl Web {
                 }
                 let factor = if self.settles_too(target, -d) { BOTH } else { 0.9 };
                 let sharp = self.sharpness(k, d).max(self.sharpness(target, -d));
-                Some((distance * factor * sharp, target))
+                Some((self.rounded(distance * factor * sharp), target))
             })
             .collect()
     }

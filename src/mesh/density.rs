@@ -50,6 +50,9 @@ pub(super) struct Nearby {
 /// An interface nearer to an edge than 1 / `FILM` of the edge's feature size is graded less. Measured on a plate over a
 /// film of 1/80 of its half width, er 7.5: with 10 the error at a given number of panels is half of that with 1.
 const FILM: f64 = 10.0;
+/// Nearer than this part of L a point is on the edge: a cube root makes 1e-5 panels of a distance that is only rounding, and
+/// the same face would be cut differently at another size. The first of 100 cuts lies at 1e-8 L.
+const ON_EDGE: f64 = 1e-11;
 /// Points at which a line is probed, less one.
 const STEPS: usize = 8;
 /// Edges that ask for less than this many panels across a panel are left out for its parts.
@@ -209,7 +212,9 @@ impl GradedEdge {
     /// s(x): panels from the edge to distance `x`.
     fn cells(&self, x: f64, n: f64) -> f64 {
         let ratio = x / self.feature;
-        if ratio <= 1.0 {
+        if ratio < ON_EDGE {
+            0.0
+        } else if ratio <= 1.0 {
             n * if self.power < 3.5 { ratio.cbrt() } else { ratio.sqrt().sqrt() }
         } else if x <= self.fades {
             n * (1.0 + ratio.ln() / self.power)
