@@ -7,6 +7,7 @@ mod artwork;
 mod bodies;
 mod closed_forms;
 mod identities;
+mod invariance;
 mod job;
 mod main_job;
 mod mesh;

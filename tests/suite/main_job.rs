@@ -10,13 +10,13 @@ fn root() -> PathBuf {
 }
 
 /// What one run of the command did.
-struct Run {
-    code: Option<i32>,
-    stdout: String,
-    stderr: String,
+pub(crate) struct Run {
+    pub(crate) code: Option<i32>,
+    pub(crate) stdout: String,
+    pub(crate) stderr: String,
 }
 
-fn chargeskin(words: &[&str]) -> Run {
+pub(crate) fn chargeskin(words: &[&str]) -> Run {
     let output =
         Command::new(env!("CARGO_BIN_EXE_chargeskin")).args(words).current_dir(root()).output().unwrap();
     let run = Run {
