@@ -3,7 +3,8 @@
 //! A system meets each panel as often as there are panels, so what depends on one panel alone is worked out once.
 
 use crate::geom::{PanelShape, Vec3};
-use crate::kernel::quadrature::{GAUSS_2, GAUSS_3, GAUSS_4, GaussRule};
+use crate::kernel::points::Points;
+use std::sync::Arc;
 
 /// A panel, ready for integration.
 #[derive(Debug, Clone)]
@@ -30,25 +31,14 @@ pub struct Flat {
     pub radius: f64,
     /// Variance of position, m²: ∫ (r - c)(r - c)ᵀ dS over the area; xx, yy, zz, xy, xz, yz.
     pub variance: [f64; 6],
-    /// Two points per direction.
-    pub coarse: Points<4>,
-    /// Three points per direction.
-    pub fine: Points<9>,
-    /// Four points per direction.
-    pub finest: Points<16>,
-}
-
-/// Quadrature points of a panel, as a structure of arrays; the weights sum to 1.
-#[derive(Debug, Clone, Copy)]
-pub struct Points<const N: usize> {
-    /// m, from the panel's centroid.
-    pub x: [f64; N],
-    /// m, from the panel's centroid.
-    pub y: [f64; N],
-    /// m, from the panel's centroid.
-    pub z: [f64; N],
-    /// Fraction of the area.
-    pub weight: [f64; N],
+    /// Greatest distance of a corner from the centroid along each axis of the frame, m; 0 along the normal.
+    pub half_widths: [f64; 3],
+    /// Half-lengths of the longer and of the shorter pair of opposite sides, m.
+    pub half_sides: [f64; 2],
+    /// Whether the corners are those of a rectangle around the centroid, to rounding.
+    pub is_rectangle: bool,
+    /// Gauss points.
+    pub points: Arc<Points>,
 }
 
 impl Flat {
@@ -78,6 +68,10 @@ impl Flat {
                 tangents[k] = [dx / lengths[k], dy / lengths[k]];
             }
         }
+        let half_width = |axis: usize| corners.iter().map(|c| c[axis].abs()).fold(0.0, f64::max);
+        let slack = 1e-12 * (half_width(0) + half_width(1));
+        let is_rectangle = n_corners == 4
+            && corners.iter().all(|c| (0..2).all(|k| (c[k].abs() - half_width(k)).abs() <= slack));
         let m = shape.second_moment() / shape.area();
         Flat {
             centroid,
@@ -91,9 +85,10 @@ impl Flat {
             area: shape.area(),
             radius: at.iter().map(|p| (p - centroid).norm()).fold(0.0, f64::max),
             variance: [m[(0, 0)], m[(1, 1)], m[(2, 2)], m[(0, 1)], m[(0, 2)], m[(1, 2)]],
-            coarse: points(&corners, u, v, &GAUSS_2),
-            fine: points(&corners, u, v, &GAUSS_3),
-            finest: points(&corners, u, v, &GAUSS_4),
+            half_widths: [half_width(0), half_width(1), 0.0],
+            is_rectangle,
+            half_sides: half_sides(&corners),
+            points: Arc::new(Points::new(&corners, u, v)),
         }
     }
 
@@ -117,30 +112,12 @@ impl Flat {
     }
 }
 
-/// Product rule on the bilinear map of the unit square; a triangle is a quadrilateral with a repeated corner, whose
-/// Jacobian takes one degree of exactness in one direction.
-fn points<const M: usize, const N: usize>(
-    corners: &[[f64; 2]; 4],
-    u: Vec3,
-    v: Vec3,
-    rule: &GaussRule<M>,
-) -> Points<N> {
-    let mut out = Points { x: [0.0; N], y: [0.0; N], z: [0.0; N], weight: [0.0; N] };
-    let mut total = 0.0;
-    for i in 0..M {
-        for j in 0..M {
-            let (place, jacobian) = bilinear(corners, rule.nodes[i], rule.nodes[j]);
-            let at = u * place[0] + v * place[1];
-            let k = i * M + j;
-            (out.x[k], out.y[k], out.z[k]) = (at.x, at.y, at.z);
-            out.weight[k] = rule.weights[i] * rule.weights[j] * jacobian;
-            total += out.weight[k];
-        }
-    }
-    for w in &mut out.weight {
-        *w /= total;
-    }
-    out
+/// Half the longer of two opposite sides, for the longer and the shorter pair of them.
+fn half_sides(corners: &[[f64; 2]; 4]) -> [f64; 2] {
+    let side =
+        |a: usize, b: usize| 0.5 * (corners[b][0] - corners[a][0]).hypot(corners[b][1] - corners[a][1]);
+    let (first, second) = (side(0, 1).max(side(3, 2)), side(1, 2).max(side(0, 3)));
+    [first.max(second), first.min(second)]
 }
 
 /// Place (m) and Jacobian (m²) of the bilinear map at `s`, `t` in [0, 1].

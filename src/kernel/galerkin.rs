@@ -1,4 +1,5 @@
-//! Closed form of the double integral of 1/r over two panels in one plane or in parallel planes.
+//! Closed form of the double integral of 1/r over two panels in one plane or in parallel planes, of any shape; aligned
+//! rectangles are [`rectangles`](mod@crate::kernel::rectangles).
 //!
 //! With 1/r the plane Laplacian of F = r - h ln(r + h), h the distance of the planes, the divergence theorem applied
 //! once per panel leaves edges against edges (`docs/formulation.md`, "Panel integrals"; the idea is that of
@@ -11,8 +12,8 @@
 use crate::kernel::flat::Flat;
 
 /// Largest (distance + both radii)^4 / (both areas) for which the closed form is used: its terms are of the order of
-/// the fourth power of the distance, so it loses this factor of digits, ε 1e7 = 2e-9.
-const MAX_LOSS: f64 = 1e7;
+/// the fourth power of the distance, so it loses this factor of digits, ε 1e5 = 2e-11.
+const MAX_LOSS: f64 = 1e5;
 
 /// Edges are parallel or at right angles when the sine, or the cosine, of their angle is at most this.
 const ALIGNED: f64 = 1e-12;

@@ -4,15 +4,19 @@
 //! over another one ([`pair::potential`], [`pair::flux`]). Everything else in this room serves those two. The
 //! formulas and their derivations are in `docs/formulation.md`, "Panel integrals".
 
+pub mod batch;
 pub mod flat;
 pub mod flux;
 pub mod galerkin;
 pub mod image;
+pub mod lanes;
 pub mod moment;
 pub mod outer;
 pub mod pair;
+pub mod points;
 pub mod potential;
 pub mod quadrature;
+pub mod rectangles;
 pub mod regime;
 
 pub use flat::Flat;

@@ -6,12 +6,11 @@
 //! edge the edge is no singularity, only its ends are; at an angle, the distance grows by 1 / sin. Pieces with q too
 //! large are halved in that direction alone, so that long thin panels need few pieces.
 
-use std::cell::Cell;
-
+use crate::kernel::batch::Batch;
 use crate::kernel::flat::{Flat, bilinear};
 use crate::kernel::quadrature::gauss;
 
-/// How accurate a mean has to be: largest q for one to six points.
+/// How accurate a mean has to be: largest q for one to six points. No round numbers; see [`Limits`](crate::kernel::regime::Limits).
 #[derive(Debug, Clone, Copy)]
 pub struct Effort {
     /// Entry n - 1: largest q that n points may meet.
@@ -24,14 +23,20 @@ pub struct Effort {
 
 impl Effort {
     /// ρ^(-2n) of about 2e-5; for the potential, whose singularities at edges are weak (d ln d).
-    pub const POTENTIAL: Effort =
-        Effort { largest_q: [0.008, 0.12, 0.31, 0.52, 0.73, 0.9], halvings: 5, most: MOST_HALVINGS };
+    pub const POTENTIAL: Effort = Effort {
+        largest_q: [0.00807, 0.1213, 0.3117, 0.5217, 0.7317, 0.9023],
+        halvings: 5,
+        most: MOST_HALVINGS,
+    };
     /// ρ^(-2n) of about 1e-5; for the solid angle, whose errors the row of a dense dielectric magnifies.
-    pub const FLUX: Effort =
-        Effort { largest_q: [0.005, 0.1, 0.28, 0.48, 0.68, 0.86], halvings: 6, most: MOST_HALVINGS };
+    pub const FLUX: Effort = Effort {
+        largest_q: [0.00507, 0.1013, 0.2817, 0.4817, 0.6817, 0.8623],
+        halvings: 6,
+        most: MOST_HALVINGS,
+    };
     /// ρ^(-2n) of about 1e-9; the measure for the other two.
     pub const REFERENCE: Effort =
-        Effort { largest_q: [1e-5, 0.005, 0.04, 0.12, 0.24, 0.37], halvings: 11, most: u32::MAX };
+        Effort { largest_q: [1e-5, 0.005, 0.04, 0.12, 0.24, 0.37], halvings: 18, most: u32::MAX };
 }
 
 /// Most halvings of one panel. Graded pieces towards an edge and its ends need a few dozen; touching triangles reach 1e-5
@@ -39,8 +44,13 @@ impl Effort {
 /// want more: halving goes depth first, so what is left of their error sits in the pieces that come last.
 const MOST_HALVINGS: u32 = 400;
 
-/// Mean over `outer` of `f`, a function of a point in the frame of `inner` (m) that is analytic but at its edges.
-pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) -> f64) -> f64 {
+/// Lengths within this ratio count as equal, so that a choice between them does not depend on rounding.
+pub(crate) const TIE: f64 = 1.0 + 1e-9;
+
+/// Mean over `outer` of a function that is analytic but at the edges of `inner`.
+///
+/// - `f`: weighted sum of the function over field points in the frame of `inner`, m.
+pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn(&Batch) -> f64) -> f64 {
     let mut corners = [[0.0; 3]; 4];
     let n = inner.n_corners;
     for (k, c) in corners.iter_mut().enumerate().take(n) {
@@ -50,8 +60,10 @@ pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) ->
         let d = inner.u * t[0] + inner.v * t[1];
         [d.dot(&outer.u), d.dot(&outer.v), d.dot(&outer.normal)]
     };
-    let task = Task {
-        halved: Cell::new(0),
+    let mut task = Task {
+        halved: 0,
+        points: Batch::default(),
+        sum: 0.0,
         corners,
         tangents: inner.tangents.map(along),
         n,
@@ -63,13 +75,21 @@ pub fn mean(outer: &Flat, inner: &Flat, effort: &Effort, f: impl Fn([f64; 3]) ->
     };
     let patch = if outer.n_corners == 3 { task.turned_triangle(&outer.corners) } else { outer.corners };
     let sides = extents(&patch);
-    let shortest = std::array::from_fn(|k| task.shortest[k].min(sides[k].0 * 0.5f64.powi(effort.halvings)));
-    Task { shortest, ..task }.integral(&patch) / outer.area
+    for (shortest, side) in task.shortest.iter_mut().zip(sides) {
+        // Between two halvings, so that rounding does not decide whether there is one more.
+        *shortest = shortest.min(1.4 * side.0 * 0.5f64.powi(effort.halvings));
+    }
+    task.integrate(&patch);
+    task.flush();
+    task.sum / outer.area
 }
 
 struct Task<'a, F> {
     /// Halvings made so far.
-    halved: Cell<u32>,
+    halved: u32,
+    /// Points whose values are not in the sum yet.
+    points: Batch,
+    sum: f64,
     /// Corners of the inner panel in the frame of the outer one.
     corners: [[f64; 3]; 4],
     /// Its edges' directions there.
@@ -95,7 +115,7 @@ fn extents(p: &[[f64; 2]; 4]) -> [(f64, [f64; 2]); 2] {
     [pair(side(p[0], p[1]), side(p[3], p[2])), pair(side(p[0], p[3]), side(p[1], p[2]))]
 }
 
-impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
+impl<F: Fn(&Batch) -> f64> Task<'_, F> {
     /// A triangle as a quadrilateral with a repeated corner, so turned that lines of constant t run along the edge that
     /// touches the inner panel, or shrink to the only corner that does.
     fn turned_triangle(&self, corners: &[[f64; 2]; 4]) -> [[f64; 2]; 4] {
@@ -110,27 +130,39 @@ impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
             [true, false, false] => 0,
             [false, true, false] => 1,
             [false, false, true] => 2,
-            _ if far[0] >= far[1] && far[0] >= far[2] => 0,
-            _ if far[1] >= far[2] => 1,
+            _ if TIE * far[0] >= far[1] && TIE * far[0] >= far[2] => 0,
+            _ if TIE * far[1] >= far[2] => 1,
             _ => 2,
         };
         let [a, b, c] = [1, 2, 0].map(|k| corners[(apex + k) % 3]);
         [a, b, c, c]
     }
 
-    fn integral(&self, patch: &[[f64; 2]; 4]) -> f64 {
+    fn integrate(&mut self, patch: &[[f64; 2]; 4]) {
         let sides = extents(patch);
         let q = self.sharpness(patch, &sides);
         let may = [sides[0].0 > self.shortest[0], sides[1].0 > self.shortest[1]];
         let most = self.effort.largest_q[5];
-        let worst = usize::from(q[1] * f64::from(u8::from(may[1])) > q[0] * f64::from(u8::from(may[0])));
-        if q[worst] > most && may[worst] && self.halved.get() < self.effort.most {
-            self.halved.set(self.halved.get() + 1);
+        let worst =
+            usize::from(q[1] * f64::from(u8::from(may[1])) > TIE * q[0] * f64::from(u8::from(may[0])));
+        if q[worst] > most && may[worst] && self.halved < self.effort.most {
+            self.halved += 1;
             let (one, two) = halves(patch, worst);
-            return self.integral(&one) + self.integral(&two);
+            self.integrate(&one);
+            self.integrate(&two);
+            return;
         }
-        let count = |q: f64| 1 + self.effort.largest_q[..5].iter().take_while(|most| **most < q).count();
-        self.product(patch, count(q[0]), count(q[1]))
+        let effort = self.effort;
+        let count = |q: f64| 1 + effort.largest_q[..5].iter().take_while(|most| **most < q).count();
+        self.product(patch, count(q[0]), count(q[1]));
+    }
+
+    /// Adds the waiting points to the sum.
+    fn flush(&mut self) {
+        if !self.points.is_empty() {
+            self.sum += (self.f)(&self.points);
+            self.points.clear();
+        }
     }
 
     /// q along s and along t.
@@ -166,18 +198,18 @@ impl<F: Fn([f64; 3]) -> f64> Task<'_, F> {
         q
     }
 
-    fn product(&self, patch: &[[f64; 2]; 4], n_s: usize, n_t: usize) -> f64 {
+    fn product(&mut self, patch: &[[f64; 2]; 4], n_s: usize, n_t: usize) {
         let ((s, ws), (t, wt)) = (gauss(n_s), gauss(n_t));
-        let mut sum = 0.0;
         for i in 0..n_s {
             for j in 0..n_t {
                 let ([x, y], jacobian) = bilinear(patch, s[i], t[j]);
                 let at =
                     std::array::from_fn(|k| self.origin[k] + self.columns[0][k] * x + self.columns[1][k] * y);
-                sum += ws[i] * wt[j] * jacobian * (self.f)(at);
+                if self.points.push(at, ws[i] * wt[j] * jacobian) {
+                    self.flush();
+                }
             }
         }
-        sum
     }
 }
 

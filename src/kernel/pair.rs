@@ -3,10 +3,10 @@
 use std::borrow::Cow;
 
 use crate::geom::Vec3;
-use crate::kernel::flat::{Flat, Points};
+use crate::kernel::flat::Flat;
 use crate::kernel::outer::{self, Effort};
 use crate::kernel::regime::{self, Regime, regime};
-use crate::kernel::{COULOMB, EPS0, flux, galerkin, moment, potential};
+use crate::kernel::{COULOMB, EPS0, batch, galerkin, moment, points, rectangles};
 
 /// Two panels lie in one plane when no corner of the source is farther from the test panel's plane than this, as a
 /// fraction of the sum of the radii. Rounding of coordinates stays below it, any gap that is meant stays above.
@@ -22,16 +22,14 @@ const COPLANAR: f64 = 1e-9;
 /// Returns V per C/m². `A_test P(test, source)` over the area of the source is symmetric to the accuracy of the rules.
 ///
 /// # Accuracy
-/// Relative error at most 1e-5, 1e-8 for near panels in one plane; see [`regime`](mod@crate::kernel::regime).
+/// Relative error at most 1e-5, 1e-10 for near aligned rectangles; see [`regime`](mod@crate::kernel::regime).
 #[must_use]
 #[inline]
 pub fn potential(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
     let r = test.centroid - source.centroid - shift;
     let mean = match regime(test, source, r, &regime::POTENTIAL) {
         Regime::Far => moment::inverse_distance(test, source, r),
-        Regime::Coarse => product_inverse(&test.coarse, &source.coarse, r),
-        Regime::Fine => product_inverse(&test.fine, &source.fine, r),
-        Regime::Finest => product_inverse(&test.finest, &source.finest, r),
+        Regime::Points(a, b) => points::inverse_distance(&test.points, &source.points, [a, b], r),
         Regime::Near => near_inverse(test, &at_its_place(source, shift)),
     };
     COULOMB * source.area * mean
@@ -39,11 +37,13 @@ pub fn potential(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
 
 /// Mean of 1/r over both panels when they are near each other.
 fn near_inverse(test: &Flat, source: &Flat) -> f64 {
-    galerkin::inverse_distance(test, source).unwrap_or_else(|| {
+    let closed =
+        rectangles::inverse_distance(test, source).or_else(|| galerkin::inverse_distance(test, source));
+    closed.unwrap_or_else(|| {
         // The smaller panel is the outer one, whatever its part, so that the entry is symmetric.
-        let (outer, inner) = if test.radius <= source.radius { (test, source) } else { (source, test) };
-        outer::mean(outer, inner, &Effort::POTENTIAL, |at| potential::inverse_distance(inner, at))
-            / inner.area
+        let (outer, inner) =
+            if test.radius <= outer::TIE * source.radius { (test, source) } else { (source, test) };
+        outer::mean(outer, inner, &Effort::POTENTIAL, |at| batch::inverse_distance(inner, at)) / inner.area
     })
 }
 
@@ -70,9 +70,7 @@ pub fn flux(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
     }
     let mean = match regime(test, source, r, &regime::FLUX) {
         Regime::Far => moment::flux(test, source, r),
-        Regime::Coarse => product_flux(&test.coarse, &source.coarse, r, test.normal),
-        Regime::Fine => product_flux(&test.fine, &source.fine, r, test.normal),
-        Regime::Finest => product_flux(&test.finest, &source.finest, r, test.normal),
+        Regime::Points(a, b) => points::flux(&test.points, &source.points, [a, b], r, test.normal),
         Regime::Near => near_flux(test, &at_its_place(source, shift)),
     };
     COULOMB * source.area * mean
@@ -80,7 +78,9 @@ pub fn flux(test: &Flat, source: &Flat, shift: Vec3) -> f64 {
 
 /// Mean of n.r/r³ over both panels when they are near each other.
 fn near_flux(test: &Flat, source: &Flat) -> f64 {
-    -outer::mean(source, test, &Effort::FLUX, |at| flux::solid_angle(test, at)) / test.area
+    rectangles::flux(test, source).unwrap_or_else(|| {
+        -outer::mean(source, test, &Effort::FLUX, |at| batch::solid_angle(test, at)) / test.area
+    })
 }
 
 /// Whether the source, whose centroid lies `r` before that of the test panel, lies in the plane of the test panel.
@@ -97,36 +97,6 @@ fn in_one_plane(test: &Flat, source: &Flat, r: Vec3) -> bool {
 /// The source displaced by `shift`; itself where there is nothing to displace.
 fn at_its_place(source: &Flat, shift: Vec3) -> Cow<'_, Flat> {
     if shift == Vec3::zeros() { Cow::Borrowed(source) } else { Cow::Owned(source.displaced(shift)) }
-}
-
-/// Mean of 1/r over the points of both panels, whose centroids differ by `r`.
-#[inline]
-fn product_inverse<const N: usize>(test: &Points<N>, source: &Points<N>, r: Vec3) -> f64 {
-    let mut lanes = [0.0; N];
-    for i in 0..N {
-        let (x, y, z) = (r.x + test.x[i], r.y + test.y[i], r.z + test.z[i]);
-        for (j, lane) in lanes.iter_mut().enumerate() {
-            let (dx, dy, dz) = (x - source.x[j], y - source.y[j], z - source.z[j]);
-            *lane += test.weight[i] * source.weight[j] / (dx * dx + dy * dy + dz * dz).sqrt();
-        }
-    }
-    lanes.iter().sum()
-}
-
-/// Mean of n.r/r³ over the points of both panels, whose centroids differ by `r`.
-#[inline]
-fn product_flux<const N: usize>(test: &Points<N>, source: &Points<N>, r: Vec3, n: Vec3) -> f64 {
-    let mut lanes = [0.0; N];
-    for i in 0..N {
-        let (x, y, z) = (r.x + test.x[i], r.y + test.y[i], r.z + test.z[i]);
-        for (j, lane) in lanes.iter_mut().enumerate() {
-            let (dx, dy, dz) = (x - source.x[j], y - source.y[j], z - source.z[j]);
-            let d2 = dx * dx + dy * dy + dz * dz;
-            let along = dx * n.x + dy * n.y + dz * n.z;
-            *lane += test.weight[i] * source.weight[j] * along / (d2 * d2.sqrt());
-        }
-    }
-    lanes.iter().sum()
 }
 
 /// Field of the surface's own charge on either side, per unit density: 1 / (2 ε₀), V/m per C/m². Not part of

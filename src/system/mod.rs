@@ -66,9 +66,12 @@ pub fn assemble_within(mesh: &Mesh, limit: u64) -> Result<System, SystemError> {
     let mut matrix = Mat::zeros(n, n);
     matrix.as_mut().par_col_chunks_mut(1).enumerate().for_each(|(k, mut column)| {
         for (i, row) in scaled.iter().enumerate() {
-            column[(i, 0)] = sources.entry(row, sources.flat(i), k) + if i == k { row.own } else { 0.0 };
+            if !is_mirrored(&rows, i, k) {
+                column[(i, 0)] = sources.entry(row, sources.flat(i), k) + if i == k { row.own } else { 0.0 };
+            }
         }
     });
+    mirror(&mut matrix, &rows, &sources, &row_scales);
     let excited: Vec<NetId> = (0u32..)
         .map(NetId)
         .zip(&mesh.nets)
@@ -79,6 +82,22 @@ pub fn assemble_within(mesh: &Mesh, limit: u64) -> Result<System, SystemError> {
         if mesh.panels[i].kind.net() == Some(excited[c]) { row_scales[i] } else { 0.0 }
     });
     Ok(System { matrix, right_sides, excited, row_scales })
+}
+
+/// Whether entry (i, k) follows from entry (k, i): below the diagonal between two potential rows.
+fn is_mirrored(rows: &[Row], i: usize, k: usize) -> bool {
+    i > k && rows[i].is_potential() && rows[k].is_potential()
+}
+
+/// Fills the entries that [`is_mirrored`] left out: `A_i P_ik = A_k P_ki`, since the mean potential of one panel's charge over the
+/// other is the same double integral either way, images included.
+fn mirror(matrix: &mut Mat<f64>, rows: &[Row], sources: &Sources, row_scales: &[f64]) {
+    let factor = |i: usize| row_scales[i] / sources.flat(i).area;
+    for k in 0..rows.len() {
+        for i in (k + 1..rows.len()).filter(|i| is_mirrored(rows, *i, k)) {
+            matrix[(i, k)] = matrix[(k, i)] * factor(i) / factor(k);
+        }
+    }
 }
 
 fn check_size(n: usize, limit: u64) -> Result<(), SystemError> {

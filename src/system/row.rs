@@ -40,6 +40,14 @@ impl Row {
     }
 }
 
+impl Row {
+    /// Whether the row is the mean potential alone.
+    #[must_use]
+    pub(crate) fn is_potential(&self) -> bool {
+        self.own == 0.0 && self.flux == 0.0
+    }
+}
+
 /// The panels of a mesh with their images, ready to act on any test panel.
 #[derive(Debug, Clone)]
 pub struct Sources {
