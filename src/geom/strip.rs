@@ -2,7 +2,7 @@
 //!
 //! Corner k of the foot belongs to corner k of the top; what snap rounding (`snap`) has added in between is kept apart by
 //! the original edge that it lies on. On one edge the runs with one neighbour are paired in order. Rounding may put in a
-//! run of a step or two at one height only; it has no partner, and goes to the strip beside it. So both outlines are used
+//! run as thin as a step at one height only; it has no partner, and goes to the strip beside it. So both outlines are used
 //! up whatever the rounding, and the skin over them has no gap.
 
 use crate::geom::offset::length_of_way;
@@ -12,7 +12,11 @@ use std::collections::HashMap;
 
 /// A run without partner up to this length is rounding, steps: a corner that two roundings put a step apart, in x and in y,
 /// at both ends of the run, makes 2 · 2^½ < 3.
-pub const STRAY: f64 = 3.0;
+const STRAY: f64 = 3.0;
+
+/// So is one up to this share of its edge: outlines that all but touch lie within a step of each other for as long as you
+/// like. A quarter is a choice; the longest one met in 40 000 random boards had a tenth.
+const STRAY_SHARE: f64 = 0.25;
 
 /// A run of edges of one original edge with one neighbour.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -80,7 +84,7 @@ pub fn alike<T: PartialEq>(a: &[Run<T>], b: &[Run<T>]) -> bool {
 }
 
 /// The strips between the runs of a ring at its foot and at its top, in order around the ring; `None` where one edge meets
-/// other neighbours at its foot than at its top, for more than [`STRAY`] steps.
+/// other neighbours at its foot than at its top, for more than rounding explains.
 #[must_use]
 pub fn strips(foot: &[Run<usize>], top: &[Run<usize>]) -> Option<Vec<Strip>> {
     let of_edges = |runs: &[Run<usize>]| -> Vec<Vec<Run<usize>>> {
@@ -97,17 +101,18 @@ pub fn strips(foot: &[Run<usize>], top: &[Run<usize>]) -> Option<Vec<Strip>> {
 /// The strips of one original edge; `None` when a run without partner is longer than rounding makes it.
 fn strips_of_edge(foot: &[Run<usize>], top: &[Run<usize>]) -> Option<Vec<Strip>> {
     let pairs = paired(foot, top);
+    let whole = |runs: &[Run<usize>]| runs.iter().map(|run| length_of_way(&run.points)).sum::<f64>();
     if pairs.is_empty() {
         // An edge that has all but shrunk to a corner, at the foot or at the top, may have lost its neighbour.
-        let whole = |runs: &[Run<usize>]| runs.iter().map(|run| length_of_way(&run.points)).sum::<f64>();
         let (runs, other) = if whole(foot) < whole(top) { (top, foot) } else { (foot, top) };
         let [run] = runs else { return None };
         let strip = Strip { neighbour: run.neighbour, foot: joined(foot), top: joined(top) };
         return (whole(other) <= STRAY).then(|| vec![strip]);
     }
     let alone = |runs: &[Run<usize>], partners: Vec<usize>| {
+        let limit = STRAY.max(STRAY_SHARE * whole(runs));
         let mut strays = runs.iter().enumerate().filter(|(k, _)| !partners.contains(k));
-        strays.any(|(_, run)| length_of_way(&run.points) > STRAY)
+        strays.any(|(_, run)| length_of_way(&run.points) > limit)
     };
     if alone(foot, pairs.iter().map(|pair| pair.0).collect())
         || alone(top, pairs.iter().map(|pair| pair.1).collect())
@@ -192,13 +197,13 @@ mod tests {
 
     /// What: an edge that has shrunk to two steps takes its neighbour from its other end; what differs by more than
     /// rounding is refused.
-    /// Seen to fail with: `STRAY` of 30.
+    /// Seen to fail with: `STRAY` of 30; `STRAY_SHARE` of 0.5.
     #[test]
     fn only_rounding_is_overlooked() {
         let long = along(0, &[(1000, Some(2))]);
         let shrunk = strips(&long, &along(0, &[(2, None)])).unwrap();
         assert_eq!((shrunk.len(), shrunk[0].neighbour), (1, Some(2)));
         assert_eq!(strips(&long, &along(0, &[(20, Some(5))])), None);
-        assert_eq!(strips(&long, &along(0, &[(20, Some(5)), (800, Some(2))])), None);
+        assert_eq!(strips(&long, &along(0, &[(300, Some(5)), (800, Some(2))])), None);
     }
 }
