@@ -141,7 +141,7 @@ fn the_oil_probe_is_extracted() {
 #[test]
 fn the_via_fan_is_extracted() {
     if std::env::var_os("SLOW_TESTS").is_none() {
-        println!("skipped: the via fan takes minutes without optimisation; SLOW_TESTS=1 runs it");
+        println!("skipped: the via fan takes a minute or two without optimisation; SLOW_TESTS=1 runs it");
         return;
     }
     check_fixture("via-fan", &extract("via-fan", &[]), &["SENSE", "DRIVE"], &["GND", "GUARD", "infinity"]);
