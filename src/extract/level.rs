@@ -3,12 +3,12 @@
 use std::time::Instant;
 
 use crate::diag::Warning;
+use crate::extract::adapt;
 use crate::extract::error::ExtractError;
 use crate::extract::{MeshCount, Progress};
-use crate::faces::{EdgeGrade, Faces};
-use crate::geom::PanelShape;
+use crate::faces::Faces;
 use crate::job::Accuracy;
-use crate::mesh::{Mesh, MeshOptions, PanelId, PanelKind, SplitDirection};
+use crate::mesh::{Mesh, MeshOptions, PanelKind};
 use crate::results::Results;
 use crate::solve::SolveInfo;
 
@@ -21,6 +21,8 @@ pub(crate) struct Level {
     pub(crate) count: MeshCount,
     /// How well it was solved.
     pub(crate) info: SolveInfo,
+    /// Share of each panel in the error, up to a common factor.
+    pub(crate) indicator: Vec<f64>,
     /// Stage and seconds.
     pub(crate) seconds: Vec<(&'static str, f64)>,
 }
@@ -42,40 +44,6 @@ pub(crate) fn panelize(
     warnings: &mut Vec<Warning>,
 ) -> Result<Mesh, ExtractError> {
     Ok(crate::mesh::panelize(faces, &MeshOptions { density, max_panels })?.drain(warnings))
-}
-
-/// The mesh with the panels of smooth faces cut in two `halvings` times.
-///
-/// Grading leaves faces alone at whose edges no charge crowds, such as the facets of smooth bodies. A model of nothing else
-/// gets finer from level to level in this way.
-pub(crate) fn halve_smooth(mut mesh: Mesh, faces: &Faces, halvings: usize) -> Mesh {
-    let smooth: Vec<bool> = faces
-        .faces
-        .iter()
-        .map(|face| face.rings.iter().flat_map(|ring| &ring.edges).all(|edge| *edge == EdgeGrade::Smooth))
-        .collect();
-    for _ in 0..halvings {
-        let cuts: Vec<(PanelId, SplitDirection)> = (0u32..)
-            .zip(&mesh.panels)
-            .filter(|(_, panel)| smooth.get(panel.face as usize).copied().unwrap_or(false))
-            .map(|(k, panel)| (PanelId(k), across_longer_side(&panel.shape)))
-            .collect();
-        if cuts.is_empty() {
-            break;
-        }
-        mesh = mesh.split(&cuts);
-    }
-    mesh
-}
-
-/// The direction that cuts the longer sides of a quadrilateral; the longest side of a triangle.
-fn across_longer_side(shape: &PanelShape) -> SplitDirection {
-    match *shape.corners() {
-        [a, b, c, d] if (c - b).norm() + (a - d).norm() > (b - a).norm() + (d - c).norm() => {
-            SplitDirection::Second
-        }
-        _ => SplitDirection::First,
-    }
 }
 
 /// Solves one mesh and evaluates it.
@@ -100,8 +68,9 @@ pub(crate) fn solve(
     lap("solve");
     tell("evaluating");
     let results = crate::results::evaluate(mesh, &charge)?;
+    let indicator = adapt::indicator(mesh, &charge);
     lap("evaluate");
-    Ok(Level { results, count, info: charge.info, seconds })
+    Ok(Level { results, count, info: charge.info, indicator, seconds })
 }
 
 /// Counts the panels of a mesh by kind.

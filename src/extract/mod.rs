@@ -1,5 +1,7 @@
 //! The loop: [`SlabModel`] to [`Extraction`], mesh after mesh until each error bar fits.
 
+mod adapt;
+mod border;
 mod chord;
 mod error;
 mod error_bar;
@@ -8,6 +10,7 @@ mod options;
 mod prepared;
 mod sequence;
 mod stop;
+mod uniform;
 
 use crate::diag::Warning;
 use crate::faces::FaceGroup;

@@ -4,7 +4,7 @@ use std::time::Instant;
 
 use crate::diag::Warning;
 use crate::extract::error::ExtractError;
-use crate::extract::{ExtractOptions, level, sequence};
+use crate::extract::{ExtractOptions, border, level};
 use crate::faces::Faces;
 use crate::mesh::Mesh;
 use crate::slab::SlabModel;
@@ -27,7 +27,7 @@ pub struct Expectation {
     pub panels: usize,
     /// Peak memory, bytes.
     pub memory: u64,
-    /// Time, s: of both levels, and of the third solve when there is one.
+    /// Time, s: of both levels, and of the solves with and without a rim when there is one.
     pub seconds: f64,
     /// Whether the coarse mesh is solved once more with the border of the open interfaces moved in.
     pub moves_border: bool,
@@ -54,13 +54,14 @@ impl Prepared {
     pub fn expectation(&self, options: &ExtractOptions) -> Expectation {
         let coarse = self.coarsest.panels.len();
         let panels = 2 * coarse;
-        let inner = sequence::inner_part(&self.coarsest).map(|inner| inner.panels.len());
-        let solves = [Some(coarse), inner, Some(panels)];
+        let moved = border::whole_and_inner(&self.coarsest);
+        let border = moved.iter().flatten().map(|mesh| mesh.panels.len());
+        let solves = border.chain([coarse, panels]);
         Expectation {
             panels,
             memory: ExtractOptions::memory_of(panels),
-            seconds: solves.into_iter().flatten().map(|n| options.seconds_of(n)).sum(),
-            moves_border: inner.is_some(),
+            seconds: solves.map(|n| options.seconds_of(n)).sum(),
+            moves_border: moved.is_some(),
             allowed: options.panels_that_fit(),
         }
     }

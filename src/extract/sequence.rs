@@ -1,23 +1,23 @@
 //! The sequence of levels: refine until every bar fits, or say what stopped it.
 
 use crate::diag::{Origin, Warning};
+use crate::extract::adapt::Graded;
+use crate::extract::border;
 use crate::extract::error::ExtractError;
 use crate::extract::error_bar::{self, OtherParts, Step};
 use crate::extract::level::{self, Level};
-use crate::extract::stop::{self, NoFiner, Stop};
+use crate::extract::stop::{self, Stop};
+use crate::extract::uniform;
 use crate::extract::{Bars, ExtractOptions, MeshCount, Progress};
 use crate::faces::Faces;
 use crate::job::Accuracy;
-use crate::mesh::{Mesh, MeshError};
+use crate::mesh::Mesh;
 use crate::results::Results;
 use crate::solve::SolveInfo;
 
-/// Density ratio of neighbouring levels: doubles the panels, whose number grows as the square of the density.
-const DENSITY_RATIO: f64 = std::f64::consts::SQRT_2;
-/// A level must have at least this many times the panels of the one before to say anything about convergence.
-const LEAST_GROWTH: f64 = 1.3;
-/// Densities tried for one level before the faces are taken to be as fine as grading makes them.
-const MOST_TRIES: usize = 4;
+/// Models whose coarsest mesh has at most this many panels are refined all over. In larger ones most panels are what the
+/// outlines need, far from where charge crowds, and only those are refined that the answer gains from.
+const SMALL: usize = 3000;
 
 /// The finest level of a sequence, with its bars.
 #[derive(Debug, Clone)]
@@ -56,13 +56,12 @@ pub fn refine(
 /// As [`refine`], with the coarsest mesh at hand.
 pub(crate) fn refine_from(
     faces: &Faces,
-    mut mesh: Mesh,
+    mesh: Mesh,
     accuracy: Accuracy,
     options: &ExtractOptions,
     warnings: &mut Vec<Warning>,
     progress: &(dyn Fn(Progress) + Sync),
 ) -> Result<Refinement, ExtractError> {
-    let mut density = options.density;
     let (coarsest, allowed) = (mesh.panels.len(), options.panels_that_fit());
     if coarsest > allowed {
         let needed = ExtractOptions::memory_of(2 * coarsest);
@@ -73,16 +72,20 @@ pub(crate) fn refine_from(
         level.allow(accuracy);
         Ok::<Level, ExtractError>(level)
     };
-    let mut levels = vec![solved(&mesh, 1)?];
-    let inner = inner_part(&mesh).map(|inner| solved(&inner, 1)).transpose()?;
-    let bars_of = |levels: &[Level]| {
-        let steps: Vec<Step<'_>> = levels.iter().map(|level| (&level.results, level.count.panels)).collect();
-        let moved = inner.as_ref().map(|inner| (&levels[0].results, &inner.results));
+    let small = coarsest <= SMALL;
+    let Start { mesh, first, border } = start(mesh, small, allowed, &solved)?;
+    let mut density = options.density;
+    let mut levels = vec![first];
+    let mut grids = vec![Graded::first(mesh, density)];
+    let bars_of = |levels: &[Level], grids: &[Graded]| {
+        let steps: Vec<Step<'_>> =
+            levels.iter().zip(grids).map(|(level, grid)| (&level.results, grid.gain)).collect();
+        let moved = border.as_ref().map(|[whole, inner]| (&whole.results, &inner.results));
         let residual = levels.last().map_or(0.0, |level| level.info.relative_residual);
         error_bar::bars(&steps, moved, OtherParts { chord: options.chord_share, residual })
     };
     let (bars, stopped) = loop {
-        let bars = bars_of(&levels);
+        let bars = bars_of(&levels, &grids);
         let unmet = match levels.as_slice() {
             [.., _, fine] => stop::unmet(fine, &bars, accuracy, &faces.nets),
             _ => None,
@@ -90,16 +93,27 @@ pub(crate) fn refine_from(
         if levels.len() >= 2 && unmet.is_none() {
             break (bars, None);
         }
-        let before = (mesh.panels.len(), levels.len());
-        match (finer(faces, before, &mut density, options)?, unmet) {
-            (Ok(finer), _) => mesh = finer,
+        let (Some(grid), Some(level)) = (grids.last(), levels.last()) else { break (bars, None) };
+        let next = if small {
+            let before = (grid.mesh.panels.len(), levels.len());
+            let n_before = grid.mesh.panels.len();
+            uniform::finer(faces, before, &mut density, options)?
+                .map(|mesh| Graded::anew(mesh, density, n_before))
+        } else {
+            grid.refined(faces, &level.indicator, options)?
+        };
+        match (next, unmet) {
+            (Ok(finer), _) => grids.push(finer),
             (Err(cause), Some(unmet)) => break (bars, Some(Stop { unmet, cause })),
             (Err(cause), None) => return Err(cause.after_one_level()),
         }
-        levels.push(solved(&mesh, levels.len() + 1)?);
+        let number = levels.len() + 1;
+        levels.extend(grids.last().map(|grid| solved(&grid.mesh, number)).transpose()?);
     };
     warnings.extend(stopped.iter().map(|stop| Warning::new(stop.to_string(), Origin::default())));
-    let seconds = sum_seconds(levels.iter().chain(&inner));
+    // In a large model the first level is the whole mesh of the border.
+    let once_more = border.iter().flatten().skip(usize::from(!small));
+    let seconds = sum_seconds(levels.iter().chain(once_more));
     let n_levels = levels.len();
     let finest = levels.swap_remove(n_levels - 1);
     Ok(Refinement {
@@ -112,67 +126,36 @@ pub(crate) fn refine_from(
     })
 }
 
-/// The mesh after one of `n_panels` panels at this level, with at least [`LEAST_GROWTH`] times as many, or why there is
-/// none.
-fn finer(
-    faces: &Faces,
-    (n_panels, level): (usize, usize),
-    density: &mut f64,
-    options: &ExtractOptions,
-) -> Result<Result<Mesh, NoFiner>, ExtractError> {
-    let (fits, limit) = (options.panels_that_fit(), options.limit());
-    let no_room = |panels, at_least| Ok(Err(NoFiner::Room { panels, at_least, fits, limit }));
-    #[expect(clippy::cast_precision_loss, reason = "panel counts are far below 2^53")]
-    let grown = |mesh: &Mesh| mesh.panels.len() as f64 >= LEAST_GROWTH * n_panels as f64;
-    let mut tried = *density;
-    let mut ungrown = Vec::with_capacity(MOST_TRIES);
-    for _ in 0..MOST_TRIES {
-        tried *= DENSITY_RATIO;
-        let mesh = match level::panelize(faces, tried, options.most_panels(), &mut Vec::new()) {
-            Err(ExtractError::Mesh(MeshError::TooMany { needed, at_least, .. })) => {
-                return no_room(needed, at_least);
-            }
-            // Denser than a mesh may be.
-            Err(ExtractError::Mesh(MeshError::BadDensity { .. })) => break,
-            other => other?,
-        };
-        if mesh.panels.len() > fits {
-            return no_room(mesh.panels.len(), false);
-        }
-        if grown(&mesh) {
-            *density = tried;
-            return Ok(Ok(mesh));
-        }
-        ungrown.push((tried, mesh));
-    }
-    // A model of smooth faces only has nothing that grading could refine.
-    for (tried, mesh) in ungrown {
-        let mesh = level::halve_smooth(mesh, faces, level);
-        if mesh.panels.len() > fits {
-            return no_room(mesh.panels.len(), false);
-        }
-        if grown(&mesh) {
-            *density = tried;
-            return Ok(Ok(mesh));
-        }
-    }
-    Ok(Err(NoFiner::Faces { panels: n_panels }))
+/// The first level, and the two solves that show what the border does.
+struct Start {
+    mesh: Mesh,
+    first: Level,
+    /// With all panels and without those beyond the moved border.
+    border: Option<[Level; 2]>,
 }
 
-/// The mesh without what lies beyond the border moved in by [`error_bar::BORDER_MOVE`]; `None` when nothing is
-/// truncated.
-pub(crate) fn inner_part(mesh: &Mesh) -> Option<Mesh> {
-    let truncation = mesh.truncation?;
-    let inside = |x: f64, axis: usize| {
-        let moved = (truncation.extent[axis] / error_bar::BORDER_MOVE).max(truncation.copper[axis]);
-        (x - truncation.centre[axis]).abs() <= moved
+/// Solves what a refinement of `mesh` begins with. A large model begins with the mesh that is cut at the moved border, which
+/// saves a solve; a small one keeps the coarsest, so that its next level is finer all over.
+fn start(
+    mesh: Mesh,
+    small: bool,
+    allowed: usize,
+    solved: &impl Fn(&Mesh, usize) -> Result<Level, ExtractError>,
+) -> Result<Start, ExtractError> {
+    let Some([whole, inner]) = border::whole_and_inner(&mesh) else {
+        let first = solved(&mesh, 1)?;
+        return Ok(Start { mesh, first, border: None });
     };
-    let mut inner = mesh.clone();
-    inner.panels.retain(|panel| {
-        let centre = panel.shape.centroid();
-        inside(centre.x, 0) && inside(centre.y, 1)
-    });
-    Some(inner)
+    let panels = whole.panels.len();
+    if panels > allowed {
+        return Err(ExtractError::TooLarge { panels, needed: ExtractOptions::memory_of(panels), allowed });
+    }
+    let border = [solved(&whole, 1)?, solved(&inner, 1)?];
+    Ok(if small {
+        Start { first: solved(&mesh, 1)?, mesh, border: Some(border) }
+    } else {
+        Start { mesh: whole, first: border[0].clone(), border: Some(border) }
+    })
 }
 
 fn sum_seconds<'a>(levels: impl Iterator<Item = &'a Level>) -> Vec<(String, f64)> {

@@ -47,6 +47,10 @@ const MOST_HALVINGS: u32 = 400;
 /// Lengths within this ratio count as equal, so that a choice between them does not depend on rounding.
 pub(crate) const TIE: f64 = 1.0 + 1e-9;
 
+/// An edge whose direction has a sine below this with a side runs along it. The sine of two directions that are the same but for rounding is
+/// near 1e-16, and over a distance that is 0 but for rounding it would be noise.
+const ALONG: f64 = 1e-9;
+
 /// Mean over `outer` of a function that is analytic but at the edges of `inner`.
 ///
 /// - `f`: weighted sum of the function over field points in the frame of `inner`, m.
@@ -192,6 +196,7 @@ impl<F: Fn(&Batch) -> f64> Task<'_, F> {
                 let (a, t) = sides[d];
                 let across = t[0] * e[1] - t[1] * e[0];
                 let sine = (across * across + e[2] * e[2]).sqrt();
+                let sine = if sine <= ALONG { 0.0 } else { sine };
                 q[d] = q[d].max(a / at_corner).max(a * sine / at_edge);
             }
         }

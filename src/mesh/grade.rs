@@ -30,7 +30,7 @@ impl Counter {
     }
 
     /// Counts one panel; whether it may be kept, or counting go on.
-    fn add(&self) -> (bool, bool) {
+    pub(super) fn add(&self) -> (bool, bool) {
         let made = self.made.fetch_add(1, Ordering::Relaxed);
         (made < self.limit, made < self.limit.saturating_mul(GIVE_UP))
     }

@@ -15,11 +15,13 @@ mod grade;
 mod outline;
 pub mod panel;
 pub mod quality;
+pub mod regrade;
 pub mod split;
 
 pub use error::{FaceProblem, MeshError};
 pub use panel::{Mesh, Panel, PanelId, PanelKind};
 pub use quality::{MeshDefect, MeshQuality, check_invariants};
+pub use regrade::regrade;
 pub use split::SplitDirection;
 
 use crate::diag::Warned;

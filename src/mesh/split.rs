@@ -56,6 +56,19 @@ pub fn halves(shape: &PanelShape, direction: SplitDirection) -> Option<[PanelSha
     }
 }
 
+/// The direction that cuts the longer sides of a quadrilateral; the longest side of a triangle.
+#[must_use]
+pub fn shorter(shape: &PanelShape) -> SplitDirection {
+    match *shape.corners() {
+        [a, b, c, d]
+            if (c - b).norm() + (a - d).norm() > (1.0 + 1e-9) * ((b - a).norm() + (d - c).norm()) =>
+        {
+            SplitDirection::Second
+        }
+        _ => SplitDirection::First,
+    }
+}
+
 impl Mesh {
     /// The mesh with each listed panel cut in two, or in four when it is listed with both directions.
     ///
@@ -77,7 +90,7 @@ impl Mesh {
     }
 
     /// Everything but the panels.
-    fn clone_tables(&self) -> Mesh {
+    pub(super) fn clone_tables(&self) -> Mesh {
         Mesh {
             panels: Vec::new(),
             nets: self.nets.clone(),

@@ -64,10 +64,14 @@ pub fn assemble_within(mesh: &Mesh, limit: u64) -> Result<System, SystemError> {
         .map(|(row, s)| Row { own: row.own * s, potential: row.potential * s, flux: row.flux * s })
         .collect();
     let mut matrix = Mat::zeros(n, n);
-    matrix.as_mut().par_col_chunks_mut(1).enumerate().for_each(|(k, mut column)| {
+    matrix.as_mut().par_col_chunks_mut(CHUNK).enumerate().for_each(|(chunk, mut columns)| {
         for (i, row) in scaled.iter().enumerate() {
-            if !is_mirrored(&rows, i, k) {
-                column[(i, 0)] = sources.entry(row, sources.flat(i), k) + if i == k { row.own } else { 0.0 };
+            for c in 0..columns.ncols() {
+                let k = chunk * CHUNK + c;
+                if !is_mirrored(&rows, i, k) {
+                    let own = if i == k { row.own } else { 0.0 };
+                    columns[(i, c)] = sources.entry(row, sources.flat(i), k) + own;
+                }
             }
         }
     });
@@ -83,6 +87,9 @@ pub fn assemble_within(mesh: &Mesh, limit: u64) -> Result<System, SystemError> {
     });
     Ok(System { matrix, right_sides, excited, row_scales })
 }
+
+/// Columns that are worked out together, so that a test panel is fetched once for all of them.
+const CHUNK: usize = 8;
 
 /// Whether entry (i, k) follows from entry (k, i): below the diagonal between two potential rows.
 fn is_mirrored(rows: &[Row], i: usize, k: usize) -> bool {
