@@ -15,7 +15,7 @@ use crate::extract::ExtractOptions;
 use crate::extract::error::ExtractError;
 use crate::extract::stop::NoFiner;
 use crate::faces::Faces;
-use crate::geom::{PanelShape, Vec3};
+use crate::geom::Vec3;
 use crate::mesh::{Mesh, MeshError, Panel, PanelId, PanelKind, regrade};
 use crate::solve::Charge;
 use rayon::prelude::*;
@@ -60,17 +60,18 @@ impl Graded {
 
     /// The next mesh, or why there is none.
     ///
-    /// - `indicator`: η of each panel.
+    /// - `charge`: the charge on this mesh.
     pub(crate) fn refined(
         &self,
         faces: &Faces,
-        indicator: &[f64],
+        charge: &Charge,
         options: &ExtractOptions,
     ) -> Result<Result<Graded, NoFiner>, ExtractError> {
         let (fits, limit) = (options.panels_that_fit(), options.limit());
+        let indicator = indicator(&self.mesh, charge);
         let mut room = NoFiner::Faces { panels: self.mesh.panels.len() };
         for part in MARKED {
-            let marked = marked(indicator, part);
+            let marked = marked(&indicator, part);
             let finer: Vec<(PanelId, f64)> =
                 marked.iter().map(|k| (panel_id(*k), DENSER * self.density[*k])).collect();
             let (mesh, n_parts) = match regrade(faces, &self.mesh, &finer, options.most_panels()) {
@@ -85,7 +86,7 @@ impl Graded {
                 continue;
             }
             let grown = ratio(mesh.panels.len(), self.mesh.panels.len());
-            let gain = gain(indicator, &n_parts).min(LEAST_LEFT.max(1.0 + LINEAR * (grown - 1.0)));
+            let gain = gain(&indicator, &n_parts).min(LEAST_LEFT.max(1.0 + LINEAR * (grown - 1.0)));
             if gain < LEAST_GAIN {
                 break;
             }
@@ -105,7 +106,7 @@ fn panel_id(k: usize) -> PanelId {
 }
 
 /// η of each panel.
-pub(crate) fn indicator(mesh: &Mesh, charge: &Charge) -> Vec<f64> {
+fn indicator(mesh: &Mesh, charge: &Charge) -> Vec<f64> {
     let n_excited = charge.density.ncols();
     let sizes: Vec<f64> = (0..n_excited)
         .map(|j| {
@@ -141,7 +142,7 @@ fn beside(mesh: &Mesh) -> Vec<Vec<u32>> {
     for (panel, k) in mesh.panels.iter().zip(0u32..) {
         by_face.entry(panel.face).or_default().push(k);
     }
-    let boxes: Vec<[Vec3; 2]> = mesh.panels.iter().map(|panel| bounds(&panel.shape)).collect();
+    let boxes: Vec<[Vec3; 2]> = mesh.panels.iter().map(|panel| panel.shape.bounds()).collect();
     let touch = |a: &[Vec3; 2], b: &[Vec3; 2], slack: f64| {
         (0..3).all(|c| a[0][c] <= b[1][c] + slack && b[0][c] <= a[1][c] + slack)
     };
@@ -159,12 +160,6 @@ fn beside(mesh: &Mesh) -> Vec<Vec<u32>> {
 
 /// Panels touch when their boxes do, within this part of the diameter.
 const TOUCHING: f64 = 1e-6;
-
-fn bounds(shape: &PanelShape) -> [Vec3; 2] {
-    let corners = shape.corners();
-    let lo = corners.iter().fold(Vec3::repeat(f64::INFINITY), |m, p| m.inf(p));
-    [lo, corners.iter().fold(Vec3::repeat(f64::NEG_INFINITY), |m, p| m.sup(p))]
-}
 
 /// The fewest panels that hold `part` of the sum, with those that are as good; in order.
 fn marked(indicator: &[f64], part: f64) -> Vec<usize> {

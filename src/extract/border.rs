@@ -62,8 +62,7 @@ fn is_across(shape: &PanelShape, truncation: &Truncation, axis: usize) -> bool {
 
 /// Smallest and largest coordinate along an axis, m.
 fn range(shape: &PanelShape, axis: usize) -> [f64; 2] {
-    let along = || shape.corners().iter().map(|corner| corner[axis]);
-    [along().fold(f64::INFINITY, f64::min), along().fold(f64::NEG_INFINITY, f64::max)]
+    shape.bounds().map(|corner| corner[axis])
 }
 
 /// The cut that makes the shape shorter along an axis.

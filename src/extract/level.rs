@@ -3,14 +3,13 @@
 use std::time::Instant;
 
 use crate::diag::Warning;
-use crate::extract::adapt;
 use crate::extract::error::ExtractError;
 use crate::extract::{MeshCount, Progress};
 use crate::faces::Faces;
 use crate::job::Accuracy;
 use crate::mesh::{Mesh, MeshOptions, PanelKind};
 use crate::results::Results;
-use crate::solve::SolveInfo;
+use crate::solve::Charge;
 
 /// One solved mesh.
 #[derive(Debug, Clone)]
@@ -19,10 +18,8 @@ pub(crate) struct Level {
     pub(crate) results: Results,
     /// Its panels.
     pub(crate) count: MeshCount,
-    /// How well it was solved.
-    pub(crate) info: SolveInfo,
-    /// Share of each panel in the error, up to a common factor.
-    pub(crate) indicator: Vec<f64>,
+    /// The charge on it, and how well it was solved.
+    pub(crate) charge: Charge,
     /// Stage and seconds.
     pub(crate) seconds: Vec<(&'static str, f64)>,
 }
@@ -68,9 +65,8 @@ pub(crate) fn solve(
     lap("solve");
     tell("evaluating");
     let results = crate::results::evaluate(mesh, &charge)?;
-    let indicator = adapt::indicator(mesh, &charge);
     lap("evaluate");
-    Ok(Level { results, count, info: charge.info, indicator, seconds })
+    Ok(Level { results, count, charge, seconds })
 }
 
 /// Counts the panels of a mesh by kind.

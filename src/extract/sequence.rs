@@ -81,7 +81,7 @@ pub(crate) fn refine_from(
         let steps: Vec<Step<'_>> =
             levels.iter().zip(grids).map(|(level, grid)| (&level.results, grid.gain)).collect();
         let moved = border.as_ref().map(|[whole, inner]| (&whole.results, &inner.results));
-        let residual = levels.last().map_or(0.0, |level| level.info.relative_residual);
+        let residual = levels.last().map_or(0.0, |level| level.charge.info.relative_residual);
         error_bar::bars(&steps, moved, OtherParts { chord: options.chord_share, residual })
     };
     let (bars, stopped) = loop {
@@ -95,12 +95,11 @@ pub(crate) fn refine_from(
         }
         let (Some(grid), Some(level)) = (grids.last(), levels.last()) else { break (bars, None) };
         let next = if small {
-            let before = (grid.mesh.panels.len(), levels.len());
             let n_before = grid.mesh.panels.len();
-            uniform::finer(faces, before, &mut density, options)?
+            uniform::finer(faces, (n_before, levels.len()), &mut density, options)?
                 .map(|mesh| Graded::anew(mesh, density, n_before))
         } else {
-            grid.refined(faces, &level.indicator, options)?
+            grid.refined(faces, &level.charge, options)?
         };
         match (next, unmet) {
             (Ok(finer), _) => grids.push(finer),
@@ -120,7 +119,7 @@ pub(crate) fn refine_from(
         results: finest.results,
         bars,
         count: MeshCount { levels: n_levels, ..finest.count },
-        info: finest.info,
+        info: finest.charge.info,
         stopped,
         seconds,
     })

@@ -80,6 +80,13 @@ impl PanelShape {
         self.area
     }
 
+    /// Smallest and largest coordinates, m.
+    #[must_use]
+    pub fn bounds(&self) -> [Vec3; 2] {
+        let first = self.corners[0];
+        self.corners.iter().fold([first; 2], |[lo, hi], corner| [lo.inf(corner), hi.sup(corner)])
+    }
+
     /// Greatest distance between two corners, m.
     #[must_use]
     pub fn diameter(&self) -> f64 {

@@ -38,9 +38,7 @@ impl Row {
             }
         }
     }
-}
 
-impl Row {
     /// Whether the row is the mean potential alone.
     #[must_use]
     pub(crate) fn is_potential(&self) -> bool {
